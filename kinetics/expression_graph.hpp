@@ -1,0 +1,65 @@
+#pragma once
+
+#include <cstddef>
+#include <cstdint>
+#include <span>
+#include <unordered_map>
+#include <vector>
+
+#include "core/index.hpp"
+
+namespace stillzone::kinetics {
+
+using NodeId = core::Index<struct NodeTag>;
+
+/// Expressions as one graph in which equal subexpressions are one node (hash-consing), simplified
+/// as they are built: constants folded (never into a non-finite value), x + 0, x * 1, x * 0, x ^ 1,
+/// x ^ 0.5, -(-x), a - a and the like, operands of + and * ordered so that a*b and b*a are the
+/// same node. A node only refers to nodes made before it, so the node order is an evaluation order.
+class ExpressionGraph {
+ public:
+  enum class Op : std::uint8_t {
+    constant, input, add, subtract, multiply, divide, power, negate,
+    exp, log, sqrt, minimum, maximum,
+    step,  ///< 0 for x < 0, else 1: only made by differentiating minimum and maximum
+  };
+  struct Node {
+    Op op = Op::constant;
+    NodeId a;            ///< first operand; for `input` a.value() is the input's number
+    NodeId b;            ///< second operand of two-operand nodes
+    double value = 0.0;  ///< of a constant
+  };
+
+  NodeId constant(double value);
+  NodeId input(std::size_t number);
+  NodeId add(NodeId a, NodeId b);
+  NodeId subtract(NodeId a, NodeId b);
+  NodeId multiply(NodeId a, NodeId b);
+  NodeId divide(NodeId a, NodeId b);
+  NodeId power(NodeId a, NodeId b);
+  NodeId negate(NodeId a);
+  NodeId exp(NodeId a);
+  NodeId log(NodeId a);
+  NodeId sqrt(NodeId a);
+  NodeId minimum(NodeId a, NodeId b);
+  NodeId maximum(NodeId a, NodeId b);
+
+  /// Exact derivative of `of` with respect to an input, as a node of this graph (memoised).
+  NodeId derivative(NodeId of, std::size_t input_number);
+
+  [[nodiscard]] const Node& node(NodeId id) const { return nodes_[id.value()]; }
+  [[nodiscard]] std::size_t size() const { return nodes_.size(); }
+  [[nodiscard]] bool is_constant(NodeId id) const { return node(id).op == Op::constant; }
+  /// Numbers of the inputs a node depends on, rising.
+  [[nodiscard]] std::vector<std::size_t> inputs_of(NodeId id) const;
+  /// Plain evaluation of one node, for folding, audits and tests (the fast way is kinetics/tape.hpp).
+  [[nodiscard]] double evaluate(NodeId id, std::span<const double> inputs) const;
+
+ private:
+  NodeId make(Op op, NodeId a, NodeId b, double value);
+  std::vector<Node> nodes_;
+  std::unordered_multimap<std::size_t, std::size_t> known_;
+  std::unordered_map<std::uint64_t, NodeId> derivatives_;
+};
+
+}  // namespace stillzone::kinetics
