@@ -5,6 +5,7 @@
 
 #include <Eigen/Dense>
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <limits>
 #include <memory>
@@ -82,10 +83,15 @@ std::unique_ptr<ceres::LossFunction> make_loss(const LeastSquaresOptions& option
   return nullptr;
 }
 
-ceres::Solver::Options solver_options(const LeastSquaresOptions& options) {
+// Each start is tried with a bold and a timid first trust region: a bold first step can land on a
+// plateau where a parameter has no effect any more, and look converged there.
+constexpr std::array kFirstRadii = {1e4, 1e-4};
+
+ceres::Solver::Options solver_options(const LeastSquaresOptions& options, double first_radius) {
   ceres::Solver::Options solver;
   solver.linear_solver_type = ceres::DENSE_QR;
   solver.logging_type = ceres::SILENT;
+  solver.initial_trust_region_radius = first_radius;
   solver.max_num_iterations = options.most_iterations;
   // Near rounding: what the NIST reference sets need to reach their certified digits.
   solver.function_tolerance = 1e-16;
@@ -104,7 +110,8 @@ struct OneStart {
 };
 
 OneStart solve_from(const ResidualFunction& function, std::span<const FitParameter> parameters,
-                    std::vector<double> start, const LeastSquaresOptions& options) {
+                    std::vector<double> start, double first_radius,
+                    const LeastSquaresOptions& options) {
   OneStart result;
   result.parameters = std::move(start);
   SharedEvaluation shared(function, result.parameters);
@@ -130,7 +137,7 @@ OneStart solve_from(const ResidualFunction& function, std::span<const FitParamet
     if (std::isfinite(parameter.high)) problem.SetParameterUpperBound(&value, 0, parameter.high);
   }
   ceres::Solver::Summary summary;
-  ceres::Solve(solver_options(options), &problem, &summary);
+  ceres::Solve(solver_options(options, first_radius), &problem, &summary);
   result.converged = summary.termination_type == ceres::CONVERGENCE;
   result.cost = summary.final_cost;
   result.iterations = static_cast<int>(summary.iterations.size());
@@ -144,6 +151,17 @@ bool is_at_bound(const FitParameter& parameter, double value) {
   return value <= parameter.low + slack || value >= parameter.high - slack;
 }
 
+/// Doubling the parameter would move the residuals by less than 1e-9 of their norm.
+bool has_no_effect(const LeastSquaresFit& fit, std::size_t parameter) {
+  const std::size_t p = fit.parameters.size();
+  double squares = 0.0;
+  for (std::size_t i = 0; i < fit.residuals.size(); ++i) {
+    squares += fit.jacobian[i * p + parameter] * fit.jacobian[i * p + parameter];
+  }
+  return std::sqrt(squares) * std::abs(fit.parameters[parameter]) <
+         1e-9 * std::sqrt(fit.sum_of_squares);
+}
+
 void fill_fit(const ResidualFunction& function, std::span<const FitParameter> parameters,
               LeastSquaresFit& fit) {
   fit.residuals.resize(function.n_residuals());
@@ -154,6 +172,7 @@ void fill_fit(const ResidualFunction& function, std::span<const FitParameter> pa
   for (const double residual : fit.residuals) fit.sum_of_squares += residual * residual;
   for (std::size_t j = 0; j < parameters.size(); ++j) {
     fit.at_bound.push_back(is_at_bound(parameters[j], fit.parameters[j]));
+    fit.without_effect.push_back(!fit.at_bound[j] && has_no_effect(fit, j));
   }
 }
 
@@ -173,7 +192,9 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
   std::vector<OneStart> ends;
   const OneStart* best = nullptr;
   for (const auto& start : starts) {
-    ends.push_back(solve_from(function, parameters, start, options));
+    for (const double radius : kFirstRadii) {
+      ends.push_back(solve_from(function, parameters, start, radius, options));
+    }
   }
   for (const OneStart& end : ends) {
     if (end.converged && (best == nullptr || end.cost < best->cost)) best = &end;
@@ -181,7 +202,7 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
   if (best == nullptr) {
     return Failure{.reason = fmt::format("the fit did not converge from any of {} starting points "
                                          "({})",
-                                         ends.size(), ends.front().ended),
+                                         starts.size(), ends.front().ended),
                    .try_this = "Check the data and the bounds, or start nearer to the solution."};
   }
   LeastSquaresFit fit;
@@ -194,6 +215,13 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
     if (end.converged && end.cost <= best->cost + tolerance) ++fit.starts_agreeing;
   }
   fill_fit(function, parameters, fit);
+  for (std::size_t j = 0; !options.accept_plateau && j < parameters.size(); ++j) {
+    if (!fit.without_effect[j]) continue;
+    return Failure{.reason = fmt::format("the fit ended on a plateau: at {} = {:g} this parameter "
+                                         "has no effect on the residuals any more",
+                                         parameters[j].name, fit.parameters[j]),
+                   .try_this = "Start nearer to the solution, or bound the parameter."};
+  }
   return fit;
 }
 

@@ -41,18 +41,22 @@ struct LeastSquaresOptions {
   Loss loss = Loss::squares;
   double loss_scale = 2.0;  ///< in units of the weighted residual (its standard deviation)
   int most_iterations = 500;
+  /// A solution at which some parameter has no effect (a plateau) is a Failure, unless the caller
+  /// asks to see it: then LeastSquaresFit::without_effect tells which.
+  bool accept_plateau = false;
   /// Further starting points besides the parameters' own; each as long as the parameters.
   std::vector<std::vector<double>> more_starts;
 };
 
 struct LeastSquaresFit {
   std::vector<double> parameters;
-  std::vector<double> residuals;  ///< weighted, without the loss
-  std::vector<double> jacobian;   ///< at the solution, row after row
-  double sum_of_squares = 0.0;    ///< of the residuals
-  std::vector<bool> at_bound;     ///< one per parameter
+  std::vector<double> residuals;     ///< weighted, without the loss
+  std::vector<double> jacobian;      ///< at the solution, row after row
+  double sum_of_squares = 0.0;       ///< of the residuals
+  std::vector<bool> at_bound;        ///< one per parameter
+  std::vector<bool> without_effect;  ///< one per parameter; only with accept_plateau
   int iterations = 0;
-  std::size_t starts_tried = 0;
+  std::size_t starts_tried = 0;     ///< each start counts twice: a bold and a timid first step
   std::size_t starts_agreeing = 0;  ///< that reached this minimum
   std::string ended;                ///< why it stopped, with the numbers
 };
