@@ -12,9 +12,9 @@
 namespace stillzone::core {
 
 enum class IntegratorKind {
-  automatic,   ///< chosen by switches per time and tolerance; the choice stands in the counts
-  multistep,   ///< SUNDIALS IDA(S): variable-order BDF, restarted at switches
-  one_step,    ///< RODAS4 (Hairer and Wanner, Solving ODEs II): linearly implicit, order 4(3)
+  automatic,  ///< chosen by switches per time and tolerance; the choice stands in the counts
+  multistep,  ///< SUNDIALS IDA(S): variable-order BDF, restarted at switches
+  one_step,   ///< RODAS4 (Hairer and Wanner, Solving ODEs II): linearly implicit, order 4(3)
 };
 
 struct IntegratorOptions {

@@ -8,9 +8,9 @@ namespace stillzone::core {
 /// Where a square sparse matrix may be non-zero: compressed columns, rows rising in each column,
 /// no duplicates. 64-bit indices throughout.
 struct SparsePattern {
-  std::int64_t n = 0;                ///< rows = columns
-  std::vector<std::int64_t> start;   ///< size n + 1: column j holds entries [start[j], start[j+1])
-  std::vector<std::int64_t> row;     ///< size start[n]
+  std::int64_t n = 0;               ///< rows = columns
+  std::vector<std::int64_t> start;  ///< size n + 1: column j holds entries [start[j], start[j+1])
+  std::vector<std::int64_t> row;    ///< size start[n]
   std::vector<std::int64_t> diagonal;  ///< size n: position of entry (j, j); every one is present
 
   [[nodiscard]] std::int64_t n_entries() const { return start.empty() ? 0 : start.back(); }

@@ -19,7 +19,7 @@ struct SteadyOptions {
 };
 
 struct SteadyReport {
-  std::string how;            ///< "settled after 212 d of loose integration, then 4 Newton steps: ..."
+  std::string how;  ///< "settled after 212 d of loose integration, then 4 Newton steps: ..."
   double settled_time_d = 0;  ///< [d] model time integrated before Newton took over
   int newton_steps = 0;
   double last_relative_step = 0;
