@@ -13,11 +13,11 @@ namespace stillzone::network {
 
 /// A parameter of a candidate model as the user sees it.
 struct RtdParameter {
-  std::string name;     ///< "mixed_fraction"
-  std::string unit;     ///< "1", "m3", "m3/d"
+  std::string name;  ///< "mixed_fraction"
+  std::string unit;  ///< "1", "m3", "m3/d"
   std::string meaning;
   double start = 0.0;
-  double low = 0.0;     ///< bounds of a fit
+  double low = 0.0;  ///< bounds of a fit
   double high = 0.0;
 };
 

@@ -21,22 +21,22 @@ enum class IntegrationRule {
 /// What the samples say without any model. Ages in days at the mean flow (turnovers x V/Q).
 struct TracerMoments {
   IntegrationRule rule = IntegrationRule::straight_lines;
-  double hydraulic_retention_time = 0.0;  ///< [d] V/Q
-  double recovery = 0.0;                  ///< [1] mass at the outlet / mass dosed, tail included
-  double area = 0.0;                      ///< [g d/m3] under the net curve, tail included
-  double mean = 0.0;                      ///< [d]
-  double variance = 0.0;                  ///< [d2]
-  double tail_share = 0.0;                ///< [1] of the area beyond the last sample
-  double tail_rate = 0.0;                 ///< [1/d] of the fitted exponential; 0 when none
-  std::string tail_note;                  ///< how the tail was fitted, or why not
-  double active_fraction = 0.0;           ///< [1] mean / hydraulic_retention_time
+  double hydraulic_retention_time = 0.0;   ///< [d] V/Q
+  double recovery = 0.0;                   ///< [1] mass at the outlet / mass dosed, tail included
+  double area = 0.0;                       ///< [g d/m3] under the net curve, tail included
+  double mean = 0.0;                       ///< [d]
+  double variance = 0.0;                   ///< [d2]
+  double tail_share = 0.0;                 ///< [1] of the area beyond the last sample
+  double tail_rate = 0.0;                  ///< [1/d] of the fitted exponential; 0 when none
+  std::string tail_note;                   ///< how the tail was fitted, or why not
+  double active_fraction = 0.0;            ///< [1] mean / hydraulic_retention_time
   double t10 = 0.0, t50 = 0.0, t90 = 0.0;  ///< [d]
-  double morrill = 0.0;                   ///< t90/t10
-  double baffling = 0.0;                  ///< t10/tau
-  std::vector<double> age;                ///< [d] nodes of the curve, tail included
-  std::vector<double> cumulative;         ///< F at the nodes, 0 to 1
-  std::vector<double> density;            ///< E at the nodes [1/d]
-  std::vector<std::string> verdict;       ///< data quality in plain sentences, worst first
+  double morrill = 0.0;                    ///< t90/t10
+  double baffling = 0.0;                   ///< t10/tau
+  std::vector<double> age;                 ///< [d] nodes of the curve, tail included
+  std::vector<double> cumulative;          ///< F at the nodes, 0 to 1
+  std::vector<double> density;             ///< E at the nodes [1/d]
+  std::vector<std::string> verdict;        ///< data quality in plain sentences, worst first
 };
 
 /// Moments of one sampling point (the outlet). Failure when there are fewer than 4 usable samples
@@ -49,8 +49,8 @@ struct TracerMoments {
 /// Segregated: integral of E exp(-k t). Second order: total segregation and maximum mixedness
 /// (Zwietering 1959, Chem. Eng. Sci. 11:1-15).
 struct ConversionBounds {
-  double segregated = 0.0;        ///< share left
-  double maximum_mixedness = 0.0; ///< share left
+  double segregated = 0.0;         ///< share left
+  double maximum_mixedness = 0.0;  ///< share left
   double plug = 0.0;
   double mixed = 0.0;
 };

@@ -14,9 +14,9 @@ namespace stillzone::network {
 
 /// One laboratory value, cleaned.
 struct TracerSample {
-  double time = 0.0;   ///< [d] since time zero of the test
-  double value = 0.0;  ///< [g/m3] as measured, background still in it; the limit when censored
-  double error = 0.0;  ///< [g/m3] standard deviation, > 0
+  double time = 0.0;      ///< [d] since time zero of the test
+  double value = 0.0;     ///< [g/m3] as measured, background still in it; the limit when censored
+  double error = 0.0;     ///< [g/m3] standard deviation, > 0
   bool censored = false;  ///< under the detection limit: known only to be <= value
   int line = 0;           ///< in its CSV
 };
@@ -40,27 +40,27 @@ struct StepDose {
 
 /// Background concentration under the tracer: constant, or a straight line in time.
 struct Background {
-  double level = 0.0;    ///< [g/m3] at the dose
-  double slope = 0.0;    ///< [g/m3/d]
-  std::string how;       ///< "as stated", "mean of 4 samples before the dose", ...
+  double level = 0.0;  ///< [g/m3] at the dose
+  double slope = 0.0;  ///< [g/m3/d]
+  std::string how;     ///< "as stated", "mean of 4 samples before the dose", ...
 };
 
 /// A tracer test, validated and cleaned. Time zero: as in the files; the dose starts at `dose_at`.
 struct TracerTest {
   std::string title;
   std::string tracer;
-  core::Volume volume;         ///< nominal
-  core::FlowRate mean_flow;    ///< over the test (the constant one, or the time mean of the record)
+  core::Volume volume;       ///< nominal
+  core::FlowRate mean_flow;  ///< over the test (the constant one, or the time mean of the record)
   std::optional<core::Timeline> flow_record;  ///< [m3/d]
-  double dose_at = 0.0;        ///< [d]
+  double dose_at = 0.0;                       ///< [d]
   std::variant<PulseDose, StepDose> dose;
-  std::string dose_into;       ///< "feed" or a zone's name (user networks)
+  std::string dose_into;  ///< "feed" or a zone's name (user networks)
   Background background;
   std::vector<SamplingPoint> points;
   bool recovery_fitted = true;
   bool conservative = true;
-  std::vector<std::string> models;            ///< candidate names wanted
-  std::vector<std::string> model_cases;       ///< paths of user networks, relative to the test
+  std::vector<std::string> models;       ///< candidate names wanted
+  std::vector<std::string> model_cases;  ///< paths of user networks, relative to the test
   std::vector<std::string> notes;
 
   /// Turnovers since the dose: integral of Q/V from dose_at to t (negative before).
