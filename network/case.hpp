@@ -97,13 +97,14 @@ struct RunSettings {
   Start start = Start::seeded;
   /// start = given: place name -> component or gas name -> value; what is not named is 0.
   std::map<std::string, std::map<std::string, double>> given_start;
-  core::Duration until;         ///< dynamic only
-  core::Duration record_every;  ///< dynamic only; default until / 500
-  double tolerance = 1e-6;      ///< relative
+  core::Duration until;                  ///< dynamic only
+  core::Duration record_every;           ///< dynamic only; default until / 500
+  double tolerance = 1e-6;               ///< relative
   std::string integrator = "automatic";  ///< "automatic", "multistep", "one-step"
 };
 
-/// A case, validated, in internal units. Names are unique over zones, headspaces, feeds and outlets.
+/// A case, validated, in internal units. Names are unique over zones, headspaces, feeds and
+/// outlets.
 struct Case {
   std::string title;
   core::Temperature temperature;
@@ -124,7 +125,6 @@ struct Case {
 /// Reads and validates a case document (contract: "stillzone": "case/1"). Nothing is returned when
 /// there was a fault. Does not look at the flow balance (network/flow_balance.hpp).
 [[nodiscard]] std::optional<Case> read_case(const core::JsonDocument& document,
-                                            const core::UnitReader& units,
-                                            core::FaultList& faults);
+                                            const core::UnitReader& units, core::FaultList& faults);
 
 }  // namespace stillzone::network

@@ -29,12 +29,12 @@ struct OutletResult {
 
 struct HeadspaceResult {
   std::string name;
-  PlaceState state;  ///< gas concentrations; partial pressures [bar] among the derived
-  double pressure = 0.0;                  ///< [bar] total, water vapour included
-  double gas_flow = 0.0;                  ///< [m3/d] wet, at the pipe's back pressure
-  double gas_flow_normal_dry = 0.0;       ///< [m3/d] 0 degC, 1.01325 bar
-  double methane_flow_normal = 0.0;       ///< [m3/d] same conditions
-  double methane_share_dry = 0.0;         ///< [1] of the dry gas
+  PlaceState state;       ///< gas concentrations; partial pressures [bar] among the derived
+  double pressure = 0.0;  ///< [bar] total, water vapour included
+  double gas_flow = 0.0;  ///< [m3/d] wet, at the pipe's back pressure
+  double gas_flow_normal_dry = 0.0;  ///< [m3/d] 0 degC, 1.01325 bar
+  double methane_flow_normal = 0.0;  ///< [m3/d] same conditions
+  double methane_share_dry = 0.0;    ///< [1] of the dry gas
   bool pipe_open = true;
 };
 
@@ -46,9 +46,9 @@ struct FlowResult {
 
 /// Closure of one conserved quantity over the whole run: in = out + stored change.
 struct Balance {
-  std::string name;  ///< "water", "COD", "C", "N"
-  std::string unit;  ///< "m3", "kg COD", ...
-  double inflow = 0.0;        ///< over the run (steady: per day)
+  std::string name;     ///< "water", "COD", "C", "N"
+  std::string unit;     ///< "m3", "kg COD", ...
+  double inflow = 0.0;  ///< over the run (steady: per day)
   double liquid_out = 0.0;
   double gas_out = 0.0;
   double stored_change = 0.0;
@@ -69,7 +69,7 @@ struct Series {
 };
 
 struct RunResult {
-  std::string kind;  ///< "steady", "dynamic", "periodic"
+  std::string kind;    ///< "steady", "dynamic", "periodic"
   double until = 0.0;  ///< [d] time of the states below; 0 for a steady state
   std::vector<PlaceState> zones;
   std::vector<OutletResult> outlets;
@@ -78,9 +78,9 @@ struct RunResult {
   std::vector<Balance> balances;
   core::IntegratorCounts solver;
   std::size_t unknowns = 0;
-  double seconds = 0.0;      ///< wall clock of the computation
-  std::string solution_note; ///< how the steady state was found, or why the run ended
-  Series series;             ///< empty for a steady state
+  double seconds = 0.0;       ///< wall clock of the computation
+  std::string solution_note;  ///< how the steady state was found, or why the run ended
+  Series series;              ///< empty for a steady state
   std::vector<std::string> warnings;
 };
 

@@ -16,7 +16,8 @@ struct RunHooks {
 };
 
 /// Runs the case as its "run" block says.
-/// Failure (exit 3): no steady state, a failed integration; with zone, component, time, what to try.
+/// Failure (exit 3): no steady state, a failed integration; with zone, component, time, what to
+/// try.
 [[nodiscard]] core::Result<RunResult> run_case(const Case& the_case, const FlowBalance& balance,
                                                const RunHooks& hooks);
 

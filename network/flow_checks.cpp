@@ -1,0 +1,349 @@
+#include "network/flow_checks.hpp"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+
+#include "network/zone_graph.hpp"
+
+namespace stillzone::network {
+
+namespace {
+
+/// In one case this many faults are worth reading; the rest follow from them or are like them.
+constexpr std::size_t kMostFaults = 25;
+constexpr std::size_t kMostListed = 6;
+constexpr double kAgreement = 1e-6;  ///< relative, to which given flows must agree
+
+std::string escaped(const std::string& name) {
+  std::string text;
+  for (const char c : name) text += c == '~' ? std::string("~0") : std::string(1, c);
+  return text;
+}
+
+std::string rate(double value) { return fmt::format("{:.6g} m3/d", value); }
+
+/// Numbers the case's places: zones, then feeds, then outlets.
+struct Numbering {
+  std::size_t n_zones;
+  std::size_t n_feeds;
+  [[nodiscard]] std::size_t of(Place place) const {
+    switch (place.kind) {
+      case Place::Kind::zone:
+        return place.index;
+      case Place::Kind::feed:
+        return n_zones + place.index;
+      case Place::Kind::outlet:
+        return n_zones + n_feeds + place.index;
+    }
+    return 0;
+  }
+};
+
+}  // namespace
+
+std::string pointer_of(const Case& the_case, Place place) {
+  switch (place.kind) {
+    case Place::Kind::zone:
+      return "/zones/" + escaped(the_case.name_of(place));
+    case Place::Kind::feed:
+      return "/feeds/" + escaped(the_case.name_of(place));
+    case Place::Kind::outlet:
+      return fmt::format("/outlets/{}", place.index);
+  }
+  return "";
+}
+
+void FlowChecks::fault(const std::string& pointer, std::string found, std::string allowed,
+                       std::string way_out) {
+  if (++n_found_ > kMostFaults) return;
+  faults_.add({.file = document_.name(),
+               .pointer = pointer,
+               .line = document_.line_of(pointer),
+               .found = std::move(found),
+               .allowed = std::move(allowed),
+               .way_out = std::move(way_out)});
+}
+
+std::string FlowChecks::flow_name(std::size_t flow) const {
+  const Flow& line = case_.flows[flow];
+  return fmt::format("\"{}\" to \"{}\"", case_.name_of(line.from), case_.name_of(line.to));
+}
+
+std::string FlowChecks::flow_list(std::span<const std::size_t> flows) const {
+  std::string text;
+  for (std::size_t i = 0; i < flows.size() && i < kMostListed; ++i) {
+    text += fmt::format("{}{} ({})", i == 0 ? "" : ", ", flow_name(flows[i]),
+                        case_.flows[flows[i]].pointer);
+  }
+  if (flows.size() > kMostListed) text += fmt::format(" and {} more", flows.size() - kMostListed);
+  return text;
+}
+
+void FlowChecks::graph(const std::vector<bool>& carries) {
+  const Numbering number{case_.zones.size(), case_.feeds.size()};
+  const std::size_t n_places = case_.zones.size() + case_.feeds.size() + case_.outlets.size();
+  std::vector<Link> links;
+  std::vector<bool> joined(n_places, false);
+  for (std::size_t i = 0; i < case_.flows.size(); ++i) {
+    const Flow& flow = case_.flows[i];
+    joined[number.of(flow.from)] = true;
+    joined[number.of(flow.to)] = true;
+    if (!carries[i]) continue;
+    links.push_back({number.of(flow.from), number.of(flow.to)});
+    if (flow.exchange) links.push_back({number.of(flow.to), number.of(flow.from)});
+  }
+  std::vector<std::size_t> feeds;
+  std::vector<std::size_t> outlets;
+  for (std::size_t f = 0; f < case_.feeds.size(); ++f) {
+    const Place feed{Place::Kind::feed, f};
+    feeds.push_back(number.of(feed));
+    if (joined[feeds.back()] || !troubled_.insert(feed).second) continue;
+    fault(pointer_of(case_, feed), fmt::format("no flow leaves feed \"{}\"", case_.name_of(feed)),
+          "a feed must go somewhere", "Add a flow from it or take the feed out.");
+  }
+  for (std::size_t o = 0; o < case_.outlets.size(); ++o) {
+    const Place outlet{Place::Kind::outlet, o};
+    outlets.push_back(number.of(outlet));
+    if (joined[outlets.back()] || !troubled_.insert(outlet).second) continue;
+    fault(pointer_of(case_, outlet),
+          fmt::format("no flow enters outlet \"{}\"", case_.name_of(outlet)),
+          "an outlet must take something", "Add a flow to it or take the outlet out.");
+  }
+  const ZoneGraph graph(n_places, links);
+  const auto fed = graph.reached_from(feeds);
+  const auto drained = graph.leading_to(outlets);
+  for (std::size_t z = 0; z < case_.zones.size(); ++z) {
+    const Place zone{Place::Kind::zone, z};
+    if ((fed[z] && drained[z]) || !troubled_.insert(zone).second) continue;
+    const std::string& name = case_.name_of(zone);
+    if (!fed[z] && !drained[z]) {
+      fault(
+          pointer_of(case_, zone),
+          fmt::format("zone \"{}\" is cut off: no feed reaches it and it reaches no outlet", name),
+          "every zone must take part in the flow",
+          "Join it with an exchange or with flows greater than 0, or take the zone out.");
+    } else if (!fed[z]) {
+      fault(pointer_of(case_, zone), fmt::format("no feed reaches zone \"{}\"", name),
+            "every zone must be fed, by a flow or an exchange greater than 0",
+            "Add a flow or an exchange that leads to it.");
+    } else {
+      fault(pointer_of(case_, zone), fmt::format("zone \"{}\" reaches no outlet", name),
+            "water that enters a zone must be able to leave",
+            "Add a flow from it to an outlet or to a zone that reaches one.");
+    }
+  }
+}
+
+void FlowChecks::shares(const FlowEquations& equations) {
+  const auto check = [&](Place place, const std::vector<std::size_t>& leaving) {
+    const ShareSum sum = share_sum(case_, leaving);
+    if (sum.adds_up()) return;
+    troubled_.insert(place);
+    std::vector<std::size_t> shared;
+    for (const std::size_t i : leaving) {
+      if (case_.flows[i].share) shared.push_back(i);
+    }
+    const bool over = sum.sum > 1.0;
+    fault(
+        pointer_of(case_, place),
+        fmt::format("the shares that leave \"{}\" add up to {:.6g}", case_.name_of(place), sum.sum),
+        over ? "together they take at most 1"
+             : "they must add up to 1 when no other flow takes the rest",
+        over ? fmt::format("Lower one of {}.", flow_list(shared))
+             : fmt::format("Leave the share of one out, then it takes the rest: {}.",
+                           flow_list(shared)));
+  };
+  for (std::size_t f = 0; f < case_.feeds.size(); ++f) {
+    check({Place::Kind::feed, f}, equations.out_of_feed[f]);
+  }
+  for (std::size_t z = 0; z < case_.zones.size(); ++z) {
+    check({Place::Kind::zone, z}, equations.out_of_zone[z]);
+  }
+}
+
+void FlowChecks::open_flows(const FlowEquations& equations, const FlowSystem& system) {
+  const std::size_t n_free = system.n_free();
+  if (n_free == 0) return;
+  constexpr std::size_t kMostDirections = 8;
+  std::size_t n_told = 0;
+  for (const auto& direction : system.free_directions(kMostDirections)) {
+    std::vector<std::size_t> flows;
+    bool follows = false;
+    for (const FlowSystem::Term& term : direction) {
+      if (term.variable >= equations.n_flows) continue;
+      flows.push_back(term.variable);
+      const Flow& flow = case_.flows[term.variable];
+      follows = follows || troubled(flow.from) || troubled(flow.to);
+    }
+    ++n_told;
+    if (flows.empty() || follows) continue;
+    const std::span<const std::size_t> others = std::span(flows).subspan(1);
+    fault(case_.flows[flows.front()].pointer,
+          fmt::format("the flow from {} is left open", flow_name(flows.front())),
+          others.empty()
+              ? "continuity must fix every flow that is not given"
+              : fmt::format("continuity must fix every flow that is not given, and this one can "
+                            "change together with {}",
+                            flow_list(others)),
+          others.empty() ? "Give its \"flow\" or \"share\"."
+                         : "Give the \"flow\" or \"share\" of one of them.");
+  }
+  if (n_free > n_told && n_found_ > 0) {
+    fault("/flows", fmt::format("{} more flows are left open", n_free - n_told),
+          "continuity must fix every flow that is not given", "Give more flows or shares.");
+  }
+}
+
+void FlowChecks::contradictions(const FlowEquations& equations, const FlowSystem& system,
+                                std::span<const double> x, const std::string& when) {
+  const std::size_t n_before = n_found_;
+  unbalanced_groups(equations, x, when);
+  if (n_found_ == n_before) missed_rows(equations, system, x, when);
+}
+
+/// Places joined by flows that are not given form a group. A group that no open flow joins to an
+/// outlet has all its water in and out given: they must be equal.
+void FlowChecks::unbalanced_groups(const FlowEquations& equations, std::span<const double> x,
+                                   const std::string& when) {
+  const Numbering number{case_.zones.size(), case_.feeds.size()};
+  const std::size_t outside = case_.zones.size() + case_.feeds.size();
+  const auto node_of = [&](Place place) {
+    return place.kind == Place::Kind::outlet ? outside : number.of(place);
+  };
+  std::vector<Link> links;
+  for (const Flow& flow : case_.flows) {
+    if (!flow.exchange && !flow.given) links.push_back({node_of(flow.from), node_of(flow.to)});
+  }
+  const auto group_of = ZoneGraph(outside + 1, links).parts();
+  struct Group {
+    double in = 0.0;
+    double out = 0.0;
+    std::vector<Place> places;
+    std::vector<std::size_t> given;
+    bool follows = false;
+  };
+  std::vector<Group> groups(*std::ranges::max_element(group_of) + 1);
+  const auto join = [&](Place place) {
+    Group& group = groups[group_of[number.of(place)]];
+    group.places.push_back(place);
+    group.follows = group.follows || troubled(place);
+  };
+  for (std::size_t z = 0; z < case_.zones.size(); ++z) join({Place::Kind::zone, z});
+  for (std::size_t f = 0; f < case_.feeds.size(); ++f) {
+    join({Place::Kind::feed, f});
+    groups[group_of[case_.zones.size() + f]].in += x[equations.feed_rate(f)];
+  }
+  for (std::size_t i = 0; i < case_.flows.size(); ++i) {
+    const Flow& flow = case_.flows[i];
+    const std::size_t from = group_of[node_of(flow.from)];
+    const std::size_t to = group_of[node_of(flow.to)];
+    if (flow.exchange || !flow.given || from == to) continue;
+    groups[from].out += x[i];
+    groups[from].given.push_back(i);
+    groups[to].in += x[i];
+    groups[to].given.push_back(i);
+  }
+  for (std::size_t g = 0; g < groups.size(); ++g) {
+    const Group& group = groups[g];
+    if (g == group_of[outside] || group.follows) continue;
+    if (std::abs(group.in - group.out) <= kAgreement * std::max(group.in, group.out)) continue;
+    std::string names;
+    for (std::size_t i = 0; i < group.places.size() && i < kMostListed; ++i) {
+      names += fmt::format("{}\"{}\"", i == 0 ? "" : ", ", case_.name_of(group.places[i]));
+    }
+    if (group.places.size() > kMostListed) {
+      names += fmt::format(" and {} more", group.places.size() - kMostListed);
+    }
+    const bool is_feed = group.places.size() == 1 && group.places.front().kind == Place::Kind::feed;
+    fault(pointer_of(case_, group.places.front()),
+          is_feed ? fmt::format("feed {} brings {} and its flows take {}{}", names, rate(group.in),
+                                rate(group.out), when)
+                  : fmt::format("{} into {} and {} out of {}{}", rate(group.in), names,
+                                rate(group.out), group.places.size() == 1 ? "it" : "them", when),
+          "what flows in must flow out",
+          group.given.empty()
+              ? "Add a flow out."
+              : fmt::format("Change one of the given flows, or leave its \"flow\" out: {}.",
+                            flow_list(group.given)));
+  }
+}
+
+void FlowChecks::missed_rows(const FlowEquations& equations, const FlowSystem& system,
+                             std::span<const double> x, const std::string& when) {
+  using Kind = FlowEquations::Meaning::Kind;
+  std::set<Place> told;
+  for (std::size_t r = 0; r < equations.rows.size(); ++r) {
+    if (system.relative_residual(r, x) <= kAgreement) continue;
+    const FlowEquations::Meaning& meaning = equations.meanings[r];
+    Place place{Place::Kind::zone, meaning.index};
+    if (meaning.kind == Kind::feed) place.kind = Place::Kind::feed;
+    if (meaning.kind == Kind::share) place = case_.flows[meaning.index].from;
+    if (troubled(place) || !told.insert(place).second) continue;
+    std::vector<std::size_t> touching = place.kind == Place::Kind::feed
+                                            ? equations.out_of_feed[place.index]
+                                            : equations.out_of_zone[place.index];
+    double out = 0.0;
+    for (const std::size_t i : touching) out += x[i];
+    double in = 0.0;
+    if (place.kind == Place::Kind::feed) {
+      in = x[equations.feed_rate(place.index)];
+    } else {
+      for (const std::size_t i : equations.into_zone[place.index]) {
+        in += x[i];
+        touching.push_back(i);
+      }
+    }
+    std::erase_if(touching,
+                  [&](std::size_t i) { return !case_.flows[i].given && !case_.flows[i].share; });
+    fault(pointer_of(case_, place),
+          fmt::format("the flows and shares given at \"{}\" contradict each other: {} in, {} out{}",
+                      case_.name_of(place), rate(in), rate(out), when),
+          "what flows in must flow out, in the shares given",
+          touching.empty() ? "Change a given flow upstream of it."
+                           : fmt::format("Change one of them, or leave its \"flow\" or \"share\" "
+                                         "out: {}.",
+                                         flow_list(touching)));
+  }
+}
+
+void FlowChecks::negatives(const FlowEquations& equations, std::span<const double> x,
+                           const std::string& when) {
+  double scale = 0.0;
+  for (std::size_t i = 0; i < equations.n_flows; ++i) scale = std::max(scale, std::abs(x[i]));
+  for (std::size_t i = 0; i < equations.n_flows; ++i) {
+    const Flow& flow = case_.flows[i];
+    if (flow.exchange || x[i] >= -1e-9 * scale || !negative_.insert(i).second) continue;
+    const bool turns = flow.from.kind == Place::Kind::zone && flow.to.kind == Place::Kind::zone;
+    std::vector<std::size_t> given;
+    const auto collect = [&](Place place) {
+      if (place.kind == Place::Kind::outlet) return;
+      const auto& leaving = place.kind == Place::Kind::feed ? equations.out_of_feed[place.index]
+                                                            : equations.out_of_zone[place.index];
+      given.insert(given.end(), leaving.begin(), leaving.end());
+      if (place.kind == Place::Kind::zone) {
+        const auto& entering = equations.into_zone[place.index];
+        given.insert(given.end(), entering.begin(), entering.end());
+      }
+    };
+    collect(flow.from);
+    collect(flow.to);
+    std::erase_if(given, [&](std::size_t other) { return !case_.flows[other].given; });
+    std::ranges::sort(given);
+    const auto repeated = std::ranges::unique(given);
+    given.erase(repeated.begin(), repeated.end());
+    std::string way_out;
+    if (turns && when.empty()) way_out = "Swap \"from\" and \"to\" to turn it round";
+    if (!given.empty()) {
+      way_out += fmt::format("{} one of the given flows beside it: {}",
+                             way_out.empty() ? "Change" : ", or change", flow_list(given));
+    }
+    if (way_out.empty()) way_out = "Change the flows it depends on";
+    fault(flow.pointer,
+          fmt::format("the flow from {} comes out at {}{}", flow_name(i), rate(x[i]), when),
+          "a one-way flow must be >= 0", way_out + ".");
+  }
+}
+
+}  // namespace stillzone::network
