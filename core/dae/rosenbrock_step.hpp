@@ -38,6 +38,8 @@ class RosenbrockStep {
   /// f at the start of the step.
   [[nodiscard]] std::span<const double> rates() const { return f0_; }
   [[nodiscard]] std::span<const double> mass() const { return mass_; }
+  /// df/dy there.
+  [[nodiscard]] std::span<const double> jacobian() const { return jacobian_; }
 
   /// Adds to q what the attempted step adds: the stages' formula, so that a linear invariant of y
   /// and q holds to rounding. Call once per accepted step, before dense_quadratures.
