@@ -122,22 +122,54 @@ struct FlowBalance::Impl {
 
 namespace {
 
-/// Whether a flow can carry water, as far as its own line says.
-std::vector<bool> carrying_by_itself(const Case& the_case) {
-  std::vector<bool> carries;
-  for (const Flow& flow : the_case.flows) {
-    const bool zero_flow = flow.given && !(flow.given->value() > 0.0);
-    const bool zero_share = flow.share && !(flow.share->value() > 0.0);
-    carries.push_back(!zero_flow && !zero_share);
-  }
-  return carries;
-}
-
-std::vector<double> to_streams(std::span<const Stream> streams, std::span<const double> x) {
+/// Stream rates from the variables: an exchange carries its flow both ways and its drift on top.
+std::vector<double> to_streams(std::span<const Stream> streams, const Case& the_case,
+                               const FlowEquations& equations, std::span<const double> x) {
   std::vector<double> rates;
   rates.reserve(streams.size());
-  for (const Stream& stream : streams) rates.push_back(x[stream.flow]);
+  for (const Stream& stream : streams) {
+    double rate = x[stream.flow];
+    const Flow& flow = the_case.flows[stream.flow];
+    if (flow.exchange) {
+      const double drift = x[equations.drift(stream.flow)];
+      rate += std::max(0.0, stream.from == flow.from ? drift : -drift);
+    }
+    rates.push_back(rate);
+  }
   return rates;
+}
+
+/// Warns when the drift had more than one route: exchanges on rings that carry some.
+void warn_of_divided_drift(const Case& the_case, const FlowEquations& equations,
+                           std::span<const double> x, std::vector<std::string>& warnings) {
+  std::vector<std::size_t> ring = equations.drifting;
+  std::vector<std::size_t> n_left(the_case.zones.size(), 0);
+  for (const std::size_t i : ring) {
+    ++n_left[the_case.flows[i].from.index];
+    ++n_left[the_case.flows[i].to.index];
+  }
+  // Ends of branches are on no ring: cut them off until nothing changes.
+  for (bool cut = true; cut;) {
+    cut = std::erase_if(ring, [&](std::size_t i) {
+            std::size_t& from = n_left[the_case.flows[i].from.index];
+            std::size_t& to = n_left[the_case.flows[i].to.index];
+            if (from > 1 && to > 1) return false;
+            --from;
+            --to;
+            return true;
+          }) > 0;
+  }
+  double scale = 0.0;
+  for (std::size_t f = 0; f < equations.n_feeds; ++f) scale += x[equations.feed_rate(f)];
+  std::erase_if(ring,
+                [&](std::size_t i) { return std::abs(x[equations.drift(i)]) <= 1e-9 * scale; });
+  if (ring.empty()) return;
+  const Flow& first = the_case.flows[ring.front()];
+  warnings.push_back(fmt::format(
+      "the net flow through {} exchanges, such as \"{}\" and \"{}\" ({}), has more than one way to "
+      "go; it was divided in proportion to the exchanges. Give it as a one-way flow where you know "
+      "it",
+      ring.size(), the_case.name_of(first.from), the_case.name_of(first.to), first.pointer));
 }
 
 bool schedules_ever_on(const Case& the_case, std::span<const double> means,
@@ -211,6 +243,7 @@ std::optional<FlowBalance> FlowBalance::solve(const Case& the_case,
                     flow.exchange ? "between" : "from", the_case.name_of(flow.from),
                     flow.exchange ? "and" : "to", the_case.name_of(flow.to), flow.pointer));
   }
+  warn_of_divided_drift(the_case, equations, mean, balance.warnings_);
   if (!complete) {
     balance.warnings_.push_back(
         fmt::format("schedules and records combine in more ways than were checked for negative "
@@ -222,11 +255,13 @@ std::optional<FlowBalance> FlowBalance::solve(const Case& the_case,
 }
 
 std::vector<double> FlowBalance::rates_at(const Case& the_case, double t) const {
-  return to_streams(streams_, impl_->variables(the_case, state_at(the_case, t)));
+  return to_streams(streams_, the_case, impl_->equations,
+                    impl_->variables(the_case, state_at(the_case, t)));
 }
 
 std::vector<double> FlowBalance::mean_rates(const Case& the_case, double t) const {
-  return to_streams(streams_, impl_->variables(the_case, impl_->mean_state(the_case, t)));
+  return to_streams(streams_, the_case, impl_->equations,
+                    impl_->variables(the_case, impl_->mean_state(the_case, t)));
 }
 
 double FlowBalance::closure_error(const Case& the_case, std::span<const double> rates) const {

@@ -11,7 +11,9 @@
 
 namespace stillzone::network {
 
-/// One directed stream of the balanced network (an exchange gives two).
+/// One directed stream of the balanced network (an exchange gives two). An exchange carries its
+/// flow each way; where one-way flows alone cannot take the water on (feed -> a, a <-> b, b ->
+/// outlet) the net flow that continuity needs runs on top, in the direction it needs.
 struct Stream {
   Place from;
   Place to;

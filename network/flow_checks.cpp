@@ -24,23 +24,6 @@ std::string escaped(const std::string& name) {
 
 std::string rate(double value) { return fmt::format("{:.6g} m3/d", value); }
 
-/// Numbers the case's places: zones, then feeds, then outlets.
-struct Numbering {
-  std::size_t n_zones;
-  std::size_t n_feeds;
-  [[nodiscard]] std::size_t of(Place place) const {
-    switch (place.kind) {
-      case Place::Kind::zone:
-        return place.index;
-      case Place::Kind::feed:
-        return n_zones + place.index;
-      case Place::Kind::outlet:
-        return n_zones + n_feeds + place.index;
-    }
-    return 0;
-  }
-};
-
 }  // namespace
 
 std::string pointer_of(const Case& the_case, Place place) {
@@ -82,10 +65,9 @@ std::string FlowChecks::flow_list(std::span<const std::size_t> flows) const {
 }
 
 void FlowChecks::graph(const std::vector<bool>& carries) {
-  const Numbering number{case_.zones.size(), case_.feeds.size()};
-  const std::size_t n_places = case_.zones.size() + case_.feeds.size() + case_.outlets.size();
+  const PlaceNumbering number(case_);
   std::vector<Link> links;
-  std::vector<bool> joined(n_places, false);
+  std::vector<bool> joined(number.n_places(), false);
   for (std::size_t i = 0; i < case_.flows.size(); ++i) {
     const Flow& flow = case_.flows[i];
     joined[number.of(flow.from)] = true;
@@ -94,26 +76,22 @@ void FlowChecks::graph(const std::vector<bool>& carries) {
     links.push_back({number.of(flow.from), number.of(flow.to)});
     if (flow.exchange) links.push_back({number.of(flow.to), number.of(flow.from)});
   }
-  std::vector<std::size_t> feeds;
-  std::vector<std::size_t> outlets;
   for (std::size_t f = 0; f < case_.feeds.size(); ++f) {
     const Place feed{Place::Kind::feed, f};
-    feeds.push_back(number.of(feed));
-    if (joined[feeds.back()] || !troubled_.insert(feed).second) continue;
+    if (joined[number.of(feed)] || !troubled_.insert(feed).second) continue;
     fault(pointer_of(case_, feed), fmt::format("no flow leaves feed \"{}\"", case_.name_of(feed)),
           "a feed must go somewhere", "Add a flow from it or take the feed out.");
   }
   for (std::size_t o = 0; o < case_.outlets.size(); ++o) {
     const Place outlet{Place::Kind::outlet, o};
-    outlets.push_back(number.of(outlet));
-    if (joined[outlets.back()] || !troubled_.insert(outlet).second) continue;
+    if (joined[number.of(outlet)] || !troubled_.insert(outlet).second) continue;
     fault(pointer_of(case_, outlet),
           fmt::format("no flow enters outlet \"{}\"", case_.name_of(outlet)),
           "an outlet must take something", "Add a flow to it or take the outlet out.");
   }
-  const ZoneGraph graph(n_places, links);
-  const auto fed = graph.reached_from(feeds);
-  const auto drained = graph.leading_to(outlets);
+  const ZoneGraph graph(number.n_places(), links);
+  const auto fed = graph.reached_from(number.feeds());
+  const auto drained = graph.leading_to(number.outlets());
   for (std::size_t z = 0; z < case_.zones.size(); ++z) {
     const Place zone{Place::Kind::zone, z};
     if ((fed[z] && drained[z]) || !troubled_.insert(zone).second) continue;
@@ -172,9 +150,10 @@ void FlowChecks::open_flows(const FlowEquations& equations, const FlowSystem& sy
     std::vector<std::size_t> flows;
     bool follows = false;
     for (const FlowSystem::Term& term : direction) {
-      if (term.variable >= equations.n_flows) continue;
-      flows.push_back(term.variable);
-      const Flow& flow = case_.flows[term.variable];
+      const auto i = equations.flow_of(term.variable);
+      if (!i) continue;
+      flows.push_back(*i);
+      const Flow& flow = case_.flows[*i];
       follows = follows || troubled(flow.from) || troubled(flow.to);
     }
     ++n_told;
@@ -204,10 +183,11 @@ void FlowChecks::contradictions(const FlowEquations& equations, const FlowSystem
 }
 
 /// Places joined by flows that are not given form a group. A group that no open flow joins to an
-/// outlet has all its water in and out given: they must be equal.
+/// outlet has all its water in and out given: they must be equal. Exchanges that may drift join
+/// too.
 void FlowChecks::unbalanced_groups(const FlowEquations& equations, std::span<const double> x,
                                    const std::string& when) {
-  const Numbering number{case_.zones.size(), case_.feeds.size()};
+  const PlaceNumbering number(case_);
   const std::size_t outside = case_.zones.size() + case_.feeds.size();
   const auto node_of = [&](Place place) {
     return place.kind == Place::Kind::outlet ? outside : number.of(place);
@@ -215,6 +195,9 @@ void FlowChecks::unbalanced_groups(const FlowEquations& equations, std::span<con
   std::vector<Link> links;
   for (const Flow& flow : case_.flows) {
     if (!flow.exchange && !flow.given) links.push_back({node_of(flow.from), node_of(flow.to)});
+  }
+  for (const std::size_t i : equations.drifting) {
+    links.push_back({case_.flows[i].from.index, case_.flows[i].to.index});
   }
   const auto group_of = ZoneGraph(outside + 1, links).parts();
   struct Group {
@@ -277,6 +260,7 @@ void FlowChecks::missed_rows(const FlowEquations& equations, const FlowSystem& s
   for (std::size_t r = 0; r < equations.rows.size(); ++r) {
     if (system.relative_residual(r, x) <= kAgreement) continue;
     const FlowEquations::Meaning& meaning = equations.meanings[r];
+    if (meaning.kind == Kind::drift) continue;
     Place place{Place::Kind::zone, meaning.index};
     if (meaning.kind == Kind::feed) place.kind = Place::Kind::feed;
     if (meaning.kind == Kind::share) place = case_.flows[meaning.index].from;
@@ -293,6 +277,10 @@ void FlowChecks::missed_rows(const FlowEquations& equations, const FlowSystem& s
       for (const std::size_t i : equations.into_zone[place.index]) {
         in += x[i];
         touching.push_back(i);
+      }
+      for (const std::size_t i : equations.drifting) {
+        if (case_.flows[i].from == place) in -= x[equations.drift(i)];
+        if (case_.flows[i].to == place) in += x[equations.drift(i)];
       }
     }
     std::erase_if(touching,

@@ -1,6 +1,8 @@
 #include "network/flow_equations.hpp"
 
-#include <algorithm>
+#include <numeric>
+
+#include "network/zone_graph.hpp"
 
 namespace stillzone::network {
 
@@ -8,16 +10,11 @@ namespace {
 
 constexpr double kShareTolerance = 1e-6;
 
-FlowSystem::Row plus_row(const std::vector<std::size_t>& flows, double factor) {
+/// Each flow of a list once. (The ends of a flow differ, so no flow stands twice in a row.)
+FlowSystem::Row row_of(const std::vector<std::size_t>& flows, double factor) {
   FlowSystem::Row row;
   for (const std::size_t flow : flows) row.push_back({flow, factor});
   return row;
-}
-
-/// A zone in which a flow comes in and goes out on the same line cannot be: ends differ. So each
-/// flow stands once in a zone's row.
-void append(FlowSystem::Row& row, const FlowSystem::Row& more) {
-  row.insert(row.end(), more.begin(), more.end());
 }
 
 }  // namespace
@@ -41,13 +38,68 @@ ShareSum share_sum(const Case& the_case, const std::vector<std::size_t>& leaving
   return total;
 }
 
+std::vector<bool> carrying_by_itself(const Case& the_case) {
+  std::vector<bool> carries;
+  for (const Flow& flow : the_case.flows) {
+    const bool zero_flow = flow.given && !(flow.given->value() > 0.0);
+    const bool zero_share = flow.share && !(flow.share->value() > 0.0);
+    carries.push_back(!zero_flow && !zero_share);
+  }
+  return carries;
+}
+
+std::size_t PlaceNumbering::of(Place place) const {
+  switch (place.kind) {
+    case Place::Kind::zone:
+      return place.index;
+    case Place::Kind::feed:
+      return n_zones + place.index;
+    case Place::Kind::outlet:
+      return n_zones + n_feeds + place.index;
+  }
+  return 0;
+}
+
+std::vector<std::size_t> PlaceNumbering::feeds() const {
+  std::vector<std::size_t> numbers(n_feeds);
+  std::iota(numbers.begin(), numbers.end(), n_zones);
+  return numbers;
+}
+
+std::vector<std::size_t> PlaceNumbering::outlets() const {
+  std::vector<std::size_t> numbers(n_outlets);
+  std::iota(numbers.begin(), numbers.end(), n_zones + n_feeds);
+  return numbers;
+}
+
 FlowEquations::FlowEquations(const Case& the_case)
     : n_flows(the_case.flows.size()),
       n_feeds(the_case.feeds.size()),
       out_of_feed(the_case.feeds.size()),
       out_of_zone(the_case.zones.size()),
       into_zone(the_case.zones.size()) {
-  known.assign(n_flows + n_feeds + the_case.zones.size(), false);
+  known.assign(potential(the_case.zones.size()), false);
+  collect_flows(the_case);
+  find_drifting(the_case);
+  for (std::size_t f = 0; f < n_feeds; ++f) {
+    known[feed_rate(f)] = true;
+    FlowSystem::Row row = row_of(out_of_feed[f], 1.0);
+    row.push_back({feed_rate(f), -1.0});
+    rows.push_back(std::move(row));
+    meanings.push_back({Meaning::Kind::feed, f});
+    add_share_rows(the_case, out_of_feed[f], feed_rate(f));
+  }
+  add_zone_rows(the_case);
+  add_drift_rows(the_case);
+}
+
+std::optional<std::size_t> FlowEquations::flow_of(std::size_t variable) const {
+  if (variable < n_flows) return variable;
+  if (variable >= drift(0) && variable < drift(n_flows)) return variable - drift(0);
+  return std::nullopt;
+}
+
+void FlowEquations::collect_flows(const Case& the_case) {
   for (std::size_t i = 0; i < n_flows; ++i) {
     const Flow& flow = the_case.flows[i];
     known[i] = flow.given.has_value();
@@ -56,34 +108,56 @@ FlowEquations::FlowEquations(const Case& the_case)
     leaving[flow.from.index].push_back(i);
     if (flow.to.kind == Place::Kind::zone) into_zone[flow.to.index].push_back(i);
   }
-  // Shares that take everything are scaled to add up to exactly 1, so that 0.333 333 3 three times
-  // closes the balance to the last digit.
-  const auto add_shares = [&](const std::vector<std::size_t>& leaving, std::size_t total) {
-    const ShareSum sum = share_sum(the_case, leaving);
-    const bool all = !sum.rest_possible || sum.sum > 1.0 - kShareTolerance;
-    for (const std::size_t i : leaving) {
-      if (!the_case.flows[i].share) continue;
-      double share = the_case.flows[i].share->value();
-      if (all && sum.sum > 0.0) share /= sum.sum;
-      rows.push_back({{i, 1.0}, {total, -share}});
-      meanings.push_back({Meaning::Kind::share, i});
-    }
-    return sum.n_shares > 0;
-  };
-  for (std::size_t f = 0; f < n_feeds; ++f) {
-    known[feed_rate(f)] = true;
-    FlowSystem::Row row = plus_row(out_of_feed[f], 1.0);
-    row.push_back({feed_rate(f), -1.0});
-    rows.push_back(std::move(row));
-    meanings.push_back({Meaning::Kind::feed, f});
-    add_shares(out_of_feed[f], feed_rate(f));
+}
+
+void FlowEquations::find_drifting(const Case& the_case) {
+  const PlaceNumbering number(the_case);
+  const std::vector<bool> carries = carrying_by_itself(the_case);
+  std::vector<Link> one_way;
+  for (std::size_t i = 0; i < n_flows; ++i) {
+    const Flow& flow = the_case.flows[i];
+    if (!flow.exchange && carries[i]) one_way.push_back({number.of(flow.from), number.of(flow.to)});
+  }
+  const ZoneGraph graph(number.n_places(), one_way);
+  const auto fed = graph.reached_from(number.feeds());
+  const auto drained = graph.leading_to(number.outlets());
+  const auto settled = [&](Place zone) { return fed[zone.index] && drained[zone.index]; };
+  for (std::size_t i = 0; i < n_flows; ++i) {
+    const Flow& flow = the_case.flows[i];
+    if (!flow.exchange || !carries[i]) continue;
+    if (!settled(flow.from) || !settled(flow.to)) drifting.push_back(i);
+  }
+}
+
+/// Shares that take everything are scaled to add up to exactly 1, so that 0.333 333 3 three times
+/// closes the balance to the last digit.
+bool FlowEquations::add_share_rows(const Case& the_case, const std::vector<std::size_t>& leaving,
+                                   std::size_t total) {
+  const ShareSum sum = share_sum(the_case, leaving);
+  const bool all = !sum.rest_possible || sum.sum > 1.0 - kShareTolerance;
+  for (const std::size_t i : leaving) {
+    if (!the_case.flows[i].share) continue;
+    double share = the_case.flows[i].share->value();
+    if (all && sum.sum > 0.0) share /= sum.sum;
+    rows.push_back({{i, 1.0}, {total, -share}});
+    meanings.push_back({Meaning::Kind::share, i});
+  }
+  return sum.n_shares > 0;
+}
+
+void FlowEquations::add_zone_rows(const Case& the_case) {
+  std::vector<FlowSystem::Row> entering(the_case.zones.size());
+  for (std::size_t z = 0; z < the_case.zones.size(); ++z) entering[z] = row_of(into_zone[z], 1.0);
+  for (const std::size_t i : drifting) {
+    entering[the_case.flows[i].from.index].push_back({drift(i), -1.0});
+    entering[the_case.flows[i].to.index].push_back({drift(i), 1.0});
   }
   for (std::size_t z = 0; z < the_case.zones.size(); ++z) {
-    FlowSystem::Row in = plus_row(into_zone[z], 1.0);
-    FlowSystem::Row out = plus_row(out_of_zone[z], -1.0);
-    if (!add_shares(out_of_zone[z], throughflow(z))) {
+    FlowSystem::Row& in = entering[z];
+    FlowSystem::Row out = row_of(out_of_zone[z], -1.0);
+    if (!add_share_rows(the_case, out_of_zone[z], throughflow(z))) {
       known[throughflow(z)] = true;
-      append(in, out);
+      in.insert(in.end(), out.begin(), out.end());
       rows.push_back(std::move(in));
       meanings.push_back({Meaning::Kind::zone_in_out, z});
       continue;
@@ -94,6 +168,31 @@ FlowEquations::FlowEquations(const Case& the_case)
     meanings.push_back({Meaning::Kind::zone_in, z});
     rows.push_back(std::move(out));
     meanings.push_back({Meaning::Kind::zone_out, z});
+  }
+}
+
+void FlowEquations::add_drift_rows(const Case& the_case) {
+  const std::size_t n_zones = the_case.zones.size();
+  for (std::size_t i = 0; i < n_flows; ++i) known[drift(i)] = true;
+  std::vector<Link> links;
+  std::vector<bool> joined(n_zones, false);
+  for (const std::size_t i : drifting) {
+    const Flow& flow = the_case.flows[i];
+    known[drift(i)] = false;
+    links.push_back({flow.from.index, flow.to.index});
+    joined[flow.from.index] = true;
+    joined[flow.to.index] = true;
+    rows.push_back({{drift(i), 1.0 / flow.given->value()},
+                    {potential(flow.from.index), -1.0},
+                    {potential(flow.to.index), 1.0}});
+    meanings.push_back({Meaning::Kind::drift, i});
+  }
+  // Potentials count from the first zone of each group of joined zones.
+  const auto parts = ZoneGraph(n_zones, links).parts();
+  std::vector<bool> part_seen(n_zones, false);
+  for (std::size_t z = 0; z < n_zones; ++z) {
+    known[potential(z)] = !joined[z] || !part_seen[parts[z]];
+    part_seen[parts[z]] = true;
   }
 }
 

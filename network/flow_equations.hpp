@@ -12,18 +12,28 @@ namespace stillzone::network {
 
 /// The variables and rows of a case's flow balance.
 ///   feed f:   sum(flows out of f) = Q_f
-///   zone z:   sum(one-way flows in) = sum(one-way flows out); with shares, both equal T_z
+///   zone z:   sum(one-way flows in) + sum(drifts in) = sum(one-way flows out)
+///             with shares, both sides equal T_z
 ///   share:    q_i = share_i * T_z   or   q_i = share_i * Q_f
-/// Exchanges move no net water and stay out. Variables: one per flow, one per feed (its rate,
-/// known), one per zone (T_z, its throughflow; known and unused where no share leaves the zone).
+///   drift:    n_e / E_e = p_a - p_b of an exchange E_e between zones a and b
+///
+/// Drift. An exchange moves E both ways and, where one-way flows alone cannot take the water on,
+/// the net flow that continuity needs on top: a -> b carries E + n, b -> a carries E. It may drift
+/// when one of its zones is not both fed and drained by one-way flows; elsewhere given flows must
+/// balance by themselves. Where several routes of exchanges could carry the water it divides so
+/// that sum(n_e^2 / E_e) is least, as in a network of pipes (p is the potential of that minimum).
+///
+/// Variables: one per flow (of an exchange: E, known), one per feed (its rate, known), one per zone
+/// (T_z; known and unused where no share leaves it), one drift per flow and one potential per zone
+/// (known and 0 where there is none).
 struct FlowEquations {
   explicit FlowEquations(const Case& the_case);
 
   /// What a row of the system states.
   struct Meaning {
-    enum class Kind { feed, zone_in_out, zone_in, zone_out, share };
+    enum class Kind { feed, zone_in_out, zone_in, zone_out, share, drift };
     Kind kind = Kind::zone_in_out;
-    std::size_t index = 0;  ///< of the feed, the zone, or the flow with the share
+    std::size_t index = 0;  ///< of the feed, the zone, or the flow
   };
 
   std::size_t n_flows = 0;
@@ -31,12 +41,48 @@ struct FlowEquations {
   std::vector<std::vector<std::size_t>> out_of_feed;  ///< one-way flows by the feed they leave
   std::vector<std::vector<std::size_t>> out_of_zone;
   std::vector<std::vector<std::size_t>> into_zone;
+  std::vector<std::size_t> drifting;  ///< exchanges that may drift
   std::vector<FlowSystem::Row> rows;
   std::vector<Meaning> meanings;  ///< one per row
   std::vector<bool> known;        ///< one per variable
 
   [[nodiscard]] std::size_t feed_rate(std::size_t feed) const { return n_flows + feed; }
   [[nodiscard]] std::size_t throughflow(std::size_t zone) const { return n_flows + n_feeds + zone; }
+  /// Net flow from `from` to `to` of an exchange.
+  [[nodiscard]] std::size_t drift(std::size_t flow) const {
+    return n_flows + n_feeds + out_of_zone.size() + flow;
+  }
+  [[nodiscard]] std::size_t potential(std::size_t zone) const {
+    return 2 * n_flows + n_feeds + out_of_zone.size() + zone;
+  }
+  /// The flow whose rate or drift a variable is; none for other variables.
+  [[nodiscard]] std::optional<std::size_t> flow_of(std::size_t variable) const;
+
+ private:
+  void collect_flows(const Case& the_case);
+  void find_drifting(const Case& the_case);
+  void add_zone_rows(const Case& the_case);
+  void add_drift_rows(const Case& the_case);
+  bool add_share_rows(const Case& the_case, const std::vector<std::size_t>& leaving,
+                      std::size_t total);
+};
+
+/// Whether each flow can carry water, as far as its own line says (not given as 0).
+[[nodiscard]] std::vector<bool> carrying_by_itself(const Case& the_case);
+
+/// Numbers the case's places: zones, then feeds, then outlets.
+struct PlaceNumbering {
+  explicit PlaceNumbering(const Case& the_case)
+      : n_zones(the_case.zones.size()),
+        n_feeds(the_case.feeds.size()),
+        n_outlets(the_case.outlets.size()) {}
+  std::size_t n_zones;
+  std::size_t n_feeds;
+  std::size_t n_outlets;
+  [[nodiscard]] std::size_t of(Place place) const;
+  [[nodiscard]] std::size_t n_places() const { return n_zones + n_feeds + n_outlets; }
+  [[nodiscard]] std::vector<std::size_t> feeds() const;
+  [[nodiscard]] std::vector<std::size_t> outlets() const;
 };
 
 /// Sum of the shares that leave one place.
