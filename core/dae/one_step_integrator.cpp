@@ -131,8 +131,7 @@ Result<Done> OneStepIntegrator::run_segment(const IntegrationRequest& request, R
 /// out; next: the step to try after it.
 Result<Done> OneStepIntegrator::accepted_step(double end, double& h, double& next) {
   const double left = end - t_;
-  const double least =
-      16.0 * std::numeric_limits<double>::epsilon() * std::max(std::abs(t_), std::abs(end));
+  const double least = 16.0 * std::numeric_limits<double>::epsilon() * std::max(std::abs(t_), 1e-8);
   if (options_.longest_step > 0.0) h = std::min(h, options_.longest_step);
   while (true) {
     if (h >= left * (1.0 - 1e-9)) {
