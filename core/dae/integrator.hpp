@@ -43,10 +43,10 @@ struct IntegrationRequest {
   double until = 0.0;  ///< [d] >= from
   /// Rising times within [from, until] at which `record` is called (dense output between steps; at
   /// a switch time the state is continuous, so one call is enough).
-  std::span<const double> record_at;
-  std::function<void(double t, std::span<const double> y, std::span<const double> q)> record;
+  std::span<const double> record_at{};
+  std::function<void(double t, std::span<const double> y, std::span<const double> q)> record{};
   /// Called after each accepted step with the time reached; may be empty.
-  std::function<void(double t)> progress;
+  std::function<void(double t)> progress{};
 };
 
 class Integrator {

@@ -217,6 +217,7 @@ class MultistepIntegrator final : public Integrator {
   Result<Done> enter(double t, bool at_switch);
   Result<Done> restart(double t, double end);
   Result<Done> run_segment(const IntegrationRequest& request, RecordTimes& records, double end);
+  bool creeps();
   void learn_first_step();
   void record_up_to(RecordTimes& records);
   void add_segment_counts();
@@ -238,6 +239,8 @@ class MultistepIntegrator final : public Integrator {
   bool initialised_ = false;
   bool has_algebraic_ = false;
   double t_ = 0.0;
+  double trouble_since_ = 0.0;
+  int n_troubles_ = 0;
   std::size_t solves_before_ = 0;
   std::size_t factorisations_before_ = 0;
 };
@@ -377,7 +380,7 @@ Result<Done> MultistepIntegrator::run_segment(const IntegrationRequest& request,
     double reached = t_;
     const int code = IDASolve(ida_.get(), end, &reached, y_.get(), y_dot_.get(), IDA_ONE_STEP);
     if (problem_.defect) std::rethrow_exception(problem_.defect);
-    if (code < 0) {
+    if (code < 0 || (problem_.cause.kind != Cause::Kind::none && creeps())) {
       add_segment_counts();
       return failure(code);
     }
@@ -396,6 +399,17 @@ Result<Done> MultistepIntegrator::run_segment(const IntegrationRequest& request,
   while (records.due(t_)) records.record(y_.values(), q_.values().first(n_quadratures_));
   add_segment_counts();
   return Done{};
+}
+
+/// Before a wall (rates that are no numbers beyond it) IDA goes on with ever smaller steps: true
+/// after many steps with trouble while time hardly moved.
+bool MultistepIntegrator::creeps() {
+  constexpr int kMostTroubles = 100;
+  if (t_ - trouble_since_ > 1e-6 * std::max(std::abs(t_), 1e-3) || t_ < trouble_since_) {
+    trouble_since_ = t_;
+    n_troubles_ = 0;
+  }
+  return ++n_troubles_ > kMostTroubles;
 }
 
 /// The step that would have just met the tolerance at order 1, from the first accepted step alone:

@@ -124,8 +124,23 @@ RosenbrockStep::Outcome RosenbrockStep::attempt(double h) {
   for (std::size_t i = 0; i < n_; ++i) y1_[i] = before[i] + last[i];
   estimate_error();
   if (std::isfinite(error_)) return Outcome::done;
-  culprit_ = first_not_finite(y1_).value_or(0);
+  find_culprit();
   return Outcome::not_finite;
+}
+
+/// The solves spread one bad number over all unknowns: asks the model again, stage by stage.
+void RosenbrockStep::find_culprit() {
+  culprit_ = first_not_finite(y1_).value_or(0);
+  for (std::size_t j = 1; j < kStages; ++j) {
+    const std::span<const double> at{states_.data() + j * n_, n_};
+    if (!all_finite(at)) return;
+    evaluate_rates(system_, at, direction_);
+    ++rate_calls;
+    if (const auto i = first_not_finite(direction_)) {
+      culprit_ = *i;
+      return;
+    }
+  }
 }
 
 void RosenbrockStep::estimate_error() {

@@ -56,6 +56,7 @@ class RosenbrockStep {
   template <int Stage>
   void stage(double h);
   void estimate_error();
+  void find_culprit();
   void weigh_quadratures(std::span<const double> weights, std::span<double> sum);
 
   DaeSystem& system_;

@@ -15,7 +15,7 @@ struct SteadyOptions {
   double relative_step = 1e-11;
   /// [d] Time integration from the start leads into the basin; given up after this long.
   double longest_time = 1e5;
-  std::function<void(double t)> progress;
+  std::function<void(double t)> progress{};
 };
 
 struct SteadyReport {
