@@ -26,9 +26,9 @@ struct FreeQuantity {
   std::string pointer;  ///< JSON pointer of the quantity in its file
   Measure measure = Measure::share;
   double value = 0.0;              ///< internal unit
-  std::optional<double> fit_low;   ///< bounds of a fit, internal unit
-  std::optional<double> fit_high;
-  std::optional<Spread> spread;
+  std::optional<double> fit_low = {};   ///< bounds of a fit, internal unit
+  std::optional<double> fit_high = {};
+  std::optional<Spread> spread = {};
 };
 
 /// What all readers of one file share.

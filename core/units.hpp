@@ -1,5 +1,6 @@
 #pragma once
 
+#include <memory>
 #include <optional>
 #include <string>
 #include <string_view>
@@ -46,9 +47,14 @@ class UnitReader {
   [[nodiscard]] std::optional<Scale> scale_of(std::string_view unit, Measure measure,
                                               std::string& problem) const;
 
+  /// The same between two written units, for model parameters: "1/h" to "1/d", "g COD/L" to
+  /// "kg COD/m3". What a unit counts (COD, C, N, VSS, CaCO3 ...) must agree where both state it.
+  [[nodiscard]] std::optional<Scale> scale_between(std::string_view from, std::string_view to,
+                                                   std::string& problem) const;
+
  private:
   struct Impl;
-  Impl* impl_;
+  std::unique_ptr<Impl> impl_;
 };
 
 }  // namespace stillzone::core
