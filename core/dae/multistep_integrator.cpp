@@ -422,7 +422,7 @@ void MultistepIntegrator::learn_first_step() {
   check(IDAGetEstLocalErrors(ida_.get(), errors_.get()), "IDAGetEstLocalErrors");
   check(IDAGetErrWeights(ida_.get(), weights_.get()), "IDAGetErrWeights");
   const double error = std::max(1e-4, N_VWrmsNorm(errors_.get(), weights_.get()));
-  double growth = std::clamp(std::sqrt(0.5 / error), 0.5, 8.0);
+  double growth = std::clamp(std::sqrt(0.25 / error), 0.5, 8.0);
   if (failures > 0) growth = std::min(growth, 1.0);
   learnt_.learn(system_.interval_kind(), step * growth);
 }

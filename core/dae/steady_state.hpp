@@ -33,8 +33,8 @@ struct SteadyReport {
 /// The steady state that time integration from y settles to: error-controlled one-step integration
 /// (L-stable, loose tolerance, steps growing as rates die out) into the basin, then Newton with the
 /// exact Jacobian. When Newton leaves the basin (a relative change that is not small, or a negative
-/// concentration) the integration goes on from where it was. y in and out; the system's present
-/// interval (DaeSystem::enter) is kept.
+/// concentration, or a state that repels the path so far) the integration goes on from where it
+/// was. y in and out; the system's present interval (DaeSystem::enter) is kept.
 [[nodiscard]] Result<SteadyReport> find_steady_state(DaeSystem& system, LinearSolver& solver,
                                                      const SteadyOptions& options,
                                                      std::span<double> y);

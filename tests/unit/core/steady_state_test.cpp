@@ -134,6 +134,28 @@ TEST(SteadyState, EachSideOfAnUnstableStateEndsInItsOwnBasin) {
   }
 }
 
+/// The same line with a second unknown that decays to it: (x, w) -> w' = -0.3 (w - x). The path
+/// comes in from far along w and then lingers beside the unstable state x = 1.
+TEST(SteadyState, APathThatLingersBesideAnUnstableStateIsFollowedOn) {
+  for (const double start : {0.98, 0.999, 1.001, 1.02}) {
+    FunctionSystem system(
+        2,
+        [](std::span<const double> y, std::span<double> f) {
+          f[0] = -0.02 * y[0] * (y[0] - 1.0) * (y[0] - 3.0);
+          f[1] = -0.3 * (y[1] - y[0]);
+        },
+        [](std::span<const double> y, Eigen::MatrixXd& j) {
+          j << 0.02 * (-3.0 * y[0] * y[0] + 8.0 * y[0] - 3.0), 0.0, 0.3, -0.3;
+        });
+    std::vector<double> y = {start, 40.0};
+    const auto report = find(system, y);
+    ASSERT_TRUE(report.ok()) << report.failure().text();
+    const double expected = start < 1.0 ? 0.0 : 3.0;
+    EXPECT_NEAR(y[0], expected, 1e-11) << start << ": " << report.value().how;
+    EXPECT_NEAR(y[1], expected, 1e-11) << start << ": " << report.value().how;
+  }
+}
+
 TEST(SteadyState, AnEndlessOscillationIsReportedWithItsUnknown) {
   // the van der Pol oscillator keeps up its cycle
   FunctionSystem cycle(
