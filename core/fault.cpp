@@ -8,6 +8,7 @@ std::string Fault::text() const {
   std::string place = file;
   if (!pointer.empty()) place += (place.empty() ? "" : " ") + pointer;
   if (line > 0) place += fmt::format(" (line {})", line);
+  if (character > 0) place += fmt::format("{}character {}", place.empty() ? "" : ", ", character);
   std::string message = place.empty() ? std::string() : place + ": ";
   message += found;
   if (!allowed.empty()) message += "; " + allowed;

@@ -10,9 +10,11 @@ namespace stillzone::core {
 /// One thing that is wrong with an input file, in the four parts every message of ours has:
 /// the place, what was found, what is allowed, and the next step.
 struct Fault {
-  std::string file = {};     ///< as the user named it; empty for a command-line value
-  std::string pointer = {};  ///< JSON pointer (RFC 6901), or "row 12, column li" for a CSV; may be empty
-  int line = 0;         ///< counted from 1; 0 when not known
+  std::string file = {};  ///< as the user named it; empty for a command-line value
+  std::string pointer =
+      {};             ///< JSON pointer (RFC 6901), or "row 12, column li" for a CSV; may be empty
+  int line = 0;       ///< counted from 1; 0 when not known
+  int character = 0;  ///< within the text at that place, from 1 (an expression); 0: the whole of it
   std::string found = {};    ///< what stands there, quoted: "\"-120 m3/d\"", "key \"volum\""
   std::string allowed = {};  ///< what may stand there, a clause without full stop
   std::string way_out = {};  ///< the next step, a sentence with full stop; may be empty

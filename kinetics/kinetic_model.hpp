@@ -92,17 +92,15 @@ class KineticModel {
   std::vector<Gas> gases;
   std::vector<Derived> derived;
   std::vector<Group> groups;
-  std::string vfa;                  ///< name of the derived quantity that is the VFA; may be empty
-  double gas_constant = 0.083145;   ///< [bar m3 / kmol / K]
-  std::vector<std::string> caveats; ///< what the model's own file says of its limits
+  std::string vfa;                   ///< name of the derived quantity that is the VFA; may be empty
+  double gas_constant = 0.083145;    ///< [bar m3 / kmol / K]
+  std::vector<std::string> caveats;  ///< what the model's own file says of its limits
   std::unique_ptr<const ModelProgram> program;
 
   [[nodiscard]] std::optional<std::size_t> component(std::string_view name) const;
   [[nodiscard]] std::optional<std::size_t> gas(std::string_view name) const;
   /// Unknowns of one zone: components, then implicits.
-  [[nodiscard]] std::size_t n_zone_unknowns() const {
-    return components.size() + implicits.size();
-  }
+  [[nodiscard]] std::size_t n_zone_unknowns() const { return components.size() + implicits.size(); }
   /// Saturated water vapour pressure at a headspace temperature [K] -> [bar].
   [[nodiscard]] double vapour_pressure(double temperature) const;
 };
@@ -113,8 +111,8 @@ class KineticModel {
 [[nodiscard]] std::string_view shipped_model_text(std::string_view name);
 
 /// Loads what a case's "kinetics" key says: a shipped name, a path to a model file (relative to the
-/// case), or {"model": .., "set": {parameter: "value unit"}}. Faults go to the context's list, those
-/// inside a model file with that file's name. Nothing is returned when there was a fault.
+/// case), or {"model": .., "set": {parameter: "value unit"}}. Faults go to the context's list,
+/// those inside a model file with that file's name. Nothing is returned when there was a fault.
 /// Free parameters ({"value", "fit"/"spread"} in "set") join the context's free quantities.
 [[nodiscard]] std::optional<KineticModel> load_model(const core::ReadingContext& context,
                                                      const core::Json& node,
