@@ -7,6 +7,11 @@
 /// The two methods behind make_integrator.
 namespace stillzone::core {
 
+/// What a user can try when an integration fails.
+inline constexpr const char* kIntegrationAdvice =
+    "Look at the feed, flows and constants that act there just before this time, or try another "
+    "relative tolerance.";
+
 [[nodiscard]] std::unique_ptr<Integrator> make_one_step_integrator(
     DaeSystem& system, LinearSolver& solver, const IntegratorOptions& options);
 [[nodiscard]] std::unique_ptr<Integrator> make_multistep_integrator(

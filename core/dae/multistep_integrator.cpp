@@ -16,10 +16,6 @@
 namespace stillzone::core {
 namespace {
 
-constexpr const char* kTry =
-    "Look at the feed, flows and constants that act there just before this time, or try another "
-    "relative tolerance.";
-
 /// SUNDIALS' default 0.33 lets the step size stick at a tenth of what the error allows (measured).
 constexpr double kNonlinearCoefficient = 0.01;
 
@@ -337,7 +333,7 @@ Result<Done> MultistepIntegrator::restart(double t, double end) {
   evaluate_rates(system_, y_.values(), y_dot);
   ++problem_.rate_calls;
   if (const auto i = first_not_finite(y_dot)) {
-    return failure_at(system_, *i, t, "the rates are not finite", kTry);
+    return failure_at(system_, *i, t, "the rates are not finite", kIntegrationAdvice);
   }
   const double learnt = learnt_.of(system_.interval_kind());
   double first = learnt > 0.0 ? learnt : options_.first_step;
@@ -374,7 +370,8 @@ Result<Done> MultistepIntegrator::run_segment(const IntegrationRequest& request,
     if (steps_before + steps_here >= options_.most_steps) {
       add_segment_counts();
       return failure_at(system_, n_, t_,
-                        fmt::format("more than {} steps are needed", options_.most_steps), kTry);
+                        fmt::format("more than {} steps are needed", options_.most_steps),
+                        kIntegrationAdvice);
     }
     problem_.cause = Cause{};
     double reached = t_;
@@ -488,7 +485,7 @@ Failure MultistepIntegrator::failure(int code) const {
                            step, options_.relative_tolerance, code);
       break;
   }
-  Failure result = failure_at(system_, at, t_, std::move(reason), kTry);
+  Failure result = failure_at(system_, at, t_, std::move(reason), kIntegrationAdvice);
   result.got_done = fmt::format("{} steps were done.", counts_.steps);
   return result;
 }

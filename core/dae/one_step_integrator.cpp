@@ -14,10 +14,6 @@
 namespace stillzone::core {
 namespace {
 
-constexpr const char* kTry =
-    "Look at the feed, flows and constants that act there just before this time, or try another "
-    "relative tolerance.";
-
 class OneStepIntegrator final : public Integrator {
  public:
   OneStepIntegrator(DaeSystem& system, LinearSolver& solver, const IntegratorOptions& options)
@@ -141,7 +137,8 @@ Result<Done> OneStepIntegrator::accepted_step(double end, double& h, double& nex
     }
     if (counts_.steps + counts_.rejected_steps >= options_.most_steps) {
       return failure_at(system_, n_, t_,
-                        fmt::format("more than {} steps are needed", options_.most_steps), kTry);
+                        fmt::format("more than {} steps are needed", options_.most_steps),
+                        kIntegrationAdvice);
     }
     const auto outcome = step_.attempt(h);
     if (outcome == RosenbrockStep::Outcome::done && step_.error() <= 1.0) {
@@ -193,7 +190,7 @@ Failure OneStepIntegrator::failure(RosenbrockStep::Outcome outcome, double h, do
                            options_.relative_tolerance, error);
       break;
   }
-  Failure result = failure_at(system_, at, t_, std::move(reason), kTry);
+  Failure result = failure_at(system_, at, t_, std::move(reason), kIntegrationAdvice);
   result.got_done = fmt::format("{} steps were done.", counts_.steps);
   return result;
 }
