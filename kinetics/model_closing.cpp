@@ -59,6 +59,7 @@ double content_of(const Content& content, Balance balance) {
 std::variant<std::vector<NodeId>, std::size_t> close_balances(
     const std::vector<std::pair<std::size_t, NodeId>>& given, const std::vector<Closing>& closings,
     const std::vector<Component>& components, ExpressionGraph& graph) {
+  if (closings.empty()) return std::vector<NodeId>{};
   const auto n = static_cast<Eigen::Index>(closings.size());
   Eigen::MatrixXd contents(n, n);
   for (Eigen::Index row = 0; row < n; ++row) {

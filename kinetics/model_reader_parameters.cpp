@@ -84,7 +84,7 @@ TemperatureLaw ModelReader::read_law_object(core::ObjectReader& law, const core:
   if (!node.is_object()) return result;
   int n_forms = 0;
   for (const auto& [key, kind] : kForms) {
-    if (!law.has(key)) continue;
+    if (law.raw(key) == nullptr) continue;
     ++n_forms;
     result.kind = kind;
     if (kind == Kind::expression) {

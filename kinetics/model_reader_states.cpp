@@ -25,8 +25,11 @@ bool ModelReader::check_inputs(NodeId node, const std::string& pointer, const st
                                const std::string& clause) {
   for (const std::size_t input : program_->graph.inputs_of(node)) {
     if (allowed(input)) continue;
-    fault(pointer, fmt::format("\"{}\" depends on \"{}\"", text, names_->input_name(input)), clause,
-          "");
+    const std::string name = names_->input_name(input);
+    fault(pointer,
+          name == text ? fmt::format("\"{}\"", text)
+                       : fmt::format("\"{}\" depends on \"{}\"", text, name),
+          clause, "");
     return false;
   }
   return true;
