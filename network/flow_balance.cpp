@@ -143,26 +143,11 @@ std::vector<double> to_streams(std::span<const Stream> streams, const Case& the_
 void warn_of_divided_drift(const Case& the_case, const FlowEquations& equations,
                            std::span<const double> x, std::vector<std::string>& warnings) {
   std::vector<std::size_t> ring = equations.drifting;
-  std::vector<std::size_t> n_left(the_case.zones.size(), 0);
-  for (const std::size_t i : ring) {
-    ++n_left[the_case.flows[i].from.index];
-    ++n_left[the_case.flows[i].to.index];
-  }
-  // Ends of branches are on no ring: cut them off until nothing changes.
-  for (bool cut = true; cut;) {
-    cut = std::erase_if(ring, [&](std::size_t i) {
-            std::size_t& from = n_left[the_case.flows[i].from.index];
-            std::size_t& to = n_left[the_case.flows[i].to.index];
-            if (from > 1 && to > 1) return false;
-            --from;
-            --to;
-            return true;
-          }) > 0;
-  }
   double scale = 0.0;
   for (std::size_t f = 0; f < equations.n_feeds; ++f) scale += x[equations.feed_rate(f)];
-  std::erase_if(ring,
-                [&](std::size_t i) { return std::abs(x[equations.drift(i)]) <= 1e-9 * scale; });
+  std::erase_if(ring, [&](std::size_t i) {
+    return !equations.on_ring[i] || std::abs(x[equations.drift(i)]) <= 1e-9 * scale;
+  });
   if (ring.empty()) return;
   const Flow& first = the_case.flows[ring.front()];
   warnings.push_back(fmt::format(
@@ -187,7 +172,7 @@ bool schedules_ever_on(const Case& the_case, std::span<const double> means,
                 .found = fmt::format("schedule \"{}\" is never on",
                                      the_case.schedules[feed.schedule->value()].name),
                 .allowed = "a feed's flow is its time mean, so its schedule must be on at times",
-                .way_out = "Change the schedule, or give the feed the flow 0."});
+                .way_out = "Change the schedule or take it off the feed."});
     all = false;
   }
   return all;
@@ -209,7 +194,7 @@ std::optional<FlowBalance> FlowBalance::solve(const Case& the_case,
 
   const bool switched = !the_case.schedules.empty();
   const auto mean = impl->variables(the_case, impl->mean_state(the_case, 0.0));
-  const std::string on_average = switched ? " on average" : "";
+  const std::string on_average(switched ? kOnAverage : "");
   checks.contradictions(equations, impl->system, mean, on_average);
   if (checks.found_any()) return std::nullopt;
   checks.negatives(equations, mean, on_average);

@@ -232,25 +232,41 @@ void FlowChecks::unbalanced_groups(const FlowEquations& equations, std::span<con
     const Group& group = groups[g];
     if (g == group_of[outside] || group.follows) continue;
     if (std::abs(group.in - group.out) <= kAgreement * std::max(group.in, group.out)) continue;
-    std::string names;
-    for (std::size_t i = 0; i < group.places.size() && i < kMostListed; ++i) {
-      names += fmt::format("{}\"{}\"", i == 0 ? "" : ", ", case_.name_of(group.places[i]));
-    }
-    if (group.places.size() > kMostListed) {
-      names += fmt::format(" and {} more", group.places.size() - kMostListed);
-    }
-    const bool is_feed = group.places.size() == 1 && group.places.front().kind == Place::Kind::feed;
-    fault(pointer_of(case_, group.places.front()),
-          is_feed ? fmt::format("feed {} brings {} and its flows take {}{}", names, rate(group.in),
-                                rate(group.out), when)
-                  : fmt::format("{} into {} and {} out of {}{}", rate(group.in), names,
-                                rate(group.out), group.places.size() == 1 ? "it" : "them", when),
-          "what flows in must flow out",
-          group.given.empty()
-              ? "Add a flow out."
-              : fmt::format("Change one of the given flows, or leave its \"flow\" out: {}.",
-                            flow_list(group.given)));
+    tell_unbalanced(group.places, group.in, group.out, group.given, when);
   }
+}
+
+void FlowChecks::tell_unbalanced(std::span<const Place> places, double in, double out,
+                                 std::span<const std::size_t> given, const std::string& when) {
+  std::string zones;
+  std::string feeds;
+  std::size_t n_zones = 0;
+  for (const Place place : places) {
+    if (place.kind == Place::Kind::feed) {
+      feeds += fmt::format("{}\"{}\"", feeds.empty() ? "" : ", ", case_.name_of(place));
+    } else if (++n_zones <= kMostListed) {
+      zones += fmt::format("{}\"{}\"", zones.empty() ? "" : ", ", case_.name_of(place));
+    }
+  }
+  if (n_zones > kMostListed) zones += fmt::format(" and {} more", n_zones - kMostListed);
+  std::string found;
+  if (n_zones == 0) {
+    found =
+        fmt::format("feed {} brings {} and its flows take {}{}", feeds, rate(in), rate(out), when);
+  } else if (n_zones == 1) {
+    found = fmt::format("zone {} takes in {} and gives off {}{}", zones, rate(in), rate(out), when);
+  } else {
+    found = fmt::format("zones {} together take in {} and give off {}{}", zones, rate(in),
+                        rate(out), when);
+  }
+  std::string way_out = "Add a flow out.";
+  if (!given.empty()) {
+    way_out = fmt::format("Change one of the given flows, or leave its \"flow\" out: {}",
+                          flow_list(given));
+    way_out += feeds.empty() ? "." : fmt::format("; or change the flow of feed {}.", feeds);
+  }
+  fault(pointer_of(case_, places.front()), std::move(found), "what flows in must flow out",
+        std::move(way_out));
 }
 
 void FlowChecks::missed_rows(const FlowEquations& equations, const FlowSystem& system,
@@ -283,11 +299,13 @@ void FlowChecks::missed_rows(const FlowEquations& equations, const FlowSystem& s
         if (case_.flows[i].to == place) in += x[equations.drift(i)];
       }
     }
+    const bool differ = std::abs(in - out) > kAgreement * std::max(in, out);
+    const std::string numbers = fmt::format(": {} in, {} out", rate(in), rate(out));
     std::erase_if(touching,
                   [&](std::size_t i) { return !case_.flows[i].given && !case_.flows[i].share; });
     fault(pointer_of(case_, place),
-          fmt::format("the flows and shares given at \"{}\" contradict each other: {} in, {} out{}",
-                      case_.name_of(place), rate(in), rate(out), when),
+          fmt::format("the flows and shares given at \"{}\" contradict each other{}{}",
+                      case_.name_of(place), differ ? numbers : "", when),
           "what flows in must flow out, in the shares given",
           touching.empty() ? "Change a given flow upstream of it."
                            : fmt::format("Change one of them, or leave its \"flow\" or \"share\" "
@@ -322,7 +340,8 @@ void FlowChecks::negatives(const FlowEquations& equations, std::span<const doubl
     const auto repeated = std::ranges::unique(given);
     given.erase(repeated.begin(), repeated.end());
     std::string way_out;
-    if (turns && when.empty()) way_out = "Swap \"from\" and \"to\" to turn it round";
+    if (turns && (when.empty() || when == kOnAverage))
+      way_out = "Swap \"from\" and \"to\" to turn it round";
     if (!given.empty()) {
       way_out += fmt::format("{} one of the given flows beside it: {}",
                              way_out.empty() ? "Change" : ", or change", flow_list(given));

@@ -3,6 +3,7 @@
 #include <set>
 #include <span>
 #include <string>
+#include <string_view>
 #include <vector>
 
 #include "core/fault.hpp"
@@ -44,6 +45,8 @@ class FlowChecks {
   [[nodiscard]] bool troubled(Place place) const { return troubled_.contains(place); }
   void unbalanced_groups(const FlowEquations& equations, std::span<const double> x,
                          const std::string& when);
+  void tell_unbalanced(std::span<const Place> places, double in, double out,
+                       std::span<const std::size_t> given, const std::string& when);
   void missed_rows(const FlowEquations& equations, const FlowSystem& system,
                    std::span<const double> x, const std::string& when);
 
@@ -54,6 +57,9 @@ class FlowChecks {
   std::set<std::size_t> negative_;  ///< flows already found below 0
   std::size_t n_found_ = 0;
 };
+
+/// The `when` of a balance with every schedule at its mean.
+constexpr std::string_view kOnAverage = " on average";
 
 /// Pointer of a place in the case file.
 [[nodiscard]] std::string pointer_of(const Case& the_case, Place place);

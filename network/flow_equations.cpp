@@ -1,5 +1,6 @@
 #include "network/flow_equations.hpp"
 
+#include <algorithm>
 #include <numeric>
 
 #include "network/zone_graph.hpp"
@@ -9,13 +10,6 @@ namespace stillzone::network {
 namespace {
 
 constexpr double kShareTolerance = 1e-6;
-
-/// Each flow of a list once. (The ends of a flow differ, so no flow stands twice in a row.)
-FlowSystem::Row row_of(const std::vector<std::size_t>& flows, double factor) {
-  FlowSystem::Row row;
-  for (const std::size_t flow : flows) row.push_back({flow, factor});
-  return row;
-}
 
 }  // namespace
 
@@ -80,11 +74,13 @@ FlowEquations::FlowEquations(const Case& the_case)
       into_zone(the_case.zones.size()) {
   known.assign(potential(the_case.zones.size()), false);
   collect_flows(the_case);
+  scale_shares(the_case);
   find_drifting(the_case);
+  find_rings(the_case);
   for (std::size_t f = 0; f < n_feeds; ++f) {
     known[feed_rate(f)] = true;
-    FlowSystem::Row row = row_of(out_of_feed[f], 1.0);
-    row.push_back({feed_rate(f), -1.0});
+    FlowSystem::Row row = {{feed_rate(f), -1.0}};
+    for (const std::size_t i : out_of_feed[f]) add_flow(row, the_case, i, 1.0);
     rows.push_back(std::move(row));
     meanings.push_back({Meaning::Kind::feed, f});
     add_share_rows(the_case, out_of_feed[f], feed_rate(f));
@@ -129,32 +125,112 @@ void FlowEquations::find_drifting(const Case& the_case) {
   }
 }
 
+/// Cuts branches off the graph of drifting exchanges, from their ends, until rings are left.
+void FlowEquations::find_rings(const Case& the_case) {
+  on_ring.assign(n_flows, false);
+  std::vector<std::vector<std::size_t>> at_zone(the_case.zones.size());
+  std::vector<std::size_t> n_left(the_case.zones.size(), 0);
+  for (const std::size_t i : drifting) {
+    on_ring[i] = true;
+    for (const std::size_t zone : {the_case.flows[i].from.index, the_case.flows[i].to.index}) {
+      at_zone[zone].push_back(i);
+      ++n_left[zone];
+    }
+  }
+  std::vector<std::size_t> ends;
+  for (std::size_t z = 0; z < n_left.size(); ++z) {
+    if (n_left[z] == 1) ends.push_back(z);
+  }
+  while (!ends.empty()) {
+    const std::size_t zone = ends.back();
+    ends.pop_back();
+    for (const std::size_t i : at_zone[zone]) {
+      if (!on_ring[i]) continue;
+      on_ring[i] = false;
+      const Flow& flow = the_case.flows[i];
+      const std::size_t other = flow.from.index == zone ? flow.to.index : flow.from.index;
+      if (--n_left[other] == 1) ends.push_back(other);
+    }
+  }
+}
+
 /// Shares that take everything are scaled to add up to exactly 1, so that 0.333 333 3 three times
 /// closes the balance to the last digit.
+void FlowEquations::scale_shares(const Case& the_case) {
+  share.assign(n_flows, 0.0);
+  by_share.assign(n_flows, false);
+  const auto scale = [&](const std::vector<std::size_t>& leaving) {
+    const ShareSum sum = share_sum(the_case, leaving);
+    const bool all = !sum.rest_possible || sum.sum > 1.0 - kShareTolerance;
+    for (const std::size_t i : leaving) {
+      if (!the_case.flows[i].share) continue;
+      share[i] = the_case.flows[i].share->value();
+      if (all && sum.sum > 0.0) share[i] /= sum.sum;
+      by_share[i] = !the_case.flows[i].given;
+    }
+    // One flow that takes the rest of shares alone has a share too.
+    const auto is_rest = [&](std::size_t i) { return !the_case.flows[i].share; };
+    if (sum.n_shares == 0 || std::ranges::count_if(leaving, is_rest) != 1) return;
+    const std::size_t rest = *std::ranges::find_if(leaving, is_rest);
+    if (the_case.flows[rest].given) return;
+    share[rest] = all ? 0.0 : 1.0 - sum.sum;
+    by_share[rest] = true;
+  };
+  for (const auto& leaving : out_of_feed) scale(leaving);
+  for (const auto& leaving : out_of_zone) scale(leaving);
+}
+
+/// A flow that is only a share stands in the rows as that share of its total: the equations stay
+/// small, and its own row gives it afterwards.
+void FlowEquations::add_flow(FlowSystem::Row& row, const Case& the_case, std::size_t i,
+                             double factor) const {
+  const Flow& flow = the_case.flows[i];
+  if (!by_share[i]) {
+    row.push_back({i, factor});
+  } else if (flow.from.kind == Place::Kind::feed) {
+    row.push_back({feed_rate(flow.from.index), factor * share[i]});
+  } else {
+    row.push_back({throughflow(flow.from.index), factor * share[i]});
+  }
+}
+
+/// On a ring the potentials stand for the drift; elsewhere the drift itself, found exactly.
+void FlowEquations::add_drift(FlowSystem::Row& row, const Case& the_case, std::size_t i,
+                              double factor) const {
+  if (!on_ring[i]) {
+    row.push_back({drift(i), factor});
+    return;
+  }
+  const Flow& flow = the_case.flows[i];
+  row.push_back({potential(flow.from.index), factor * flow.given->value()});
+  row.push_back({potential(flow.to.index), -factor * flow.given->value()});
+}
+
 bool FlowEquations::add_share_rows(const Case& the_case, const std::vector<std::size_t>& leaving,
                                    std::size_t total) {
-  const ShareSum sum = share_sum(the_case, leaving);
-  const bool all = !sum.rest_possible || sum.sum > 1.0 - kShareTolerance;
+  bool any = false;
   for (const std::size_t i : leaving) {
-    if (!the_case.flows[i].share) continue;
-    double share = the_case.flows[i].share->value();
-    if (all && sum.sum > 0.0) share /= sum.sum;
-    rows.push_back({{i, 1.0}, {total, -share}});
+    any = any || the_case.flows[i].share.has_value();
+    if (!by_share[i] && !the_case.flows[i].share) continue;
+    rows.push_back({{i, 1.0}, {total, -share[i]}});
     meanings.push_back({Meaning::Kind::share, i});
   }
-  return sum.n_shares > 0;
+  return any;
 }
 
 void FlowEquations::add_zone_rows(const Case& the_case) {
   std::vector<FlowSystem::Row> entering(the_case.zones.size());
-  for (std::size_t z = 0; z < the_case.zones.size(); ++z) entering[z] = row_of(into_zone[z], 1.0);
+  for (std::size_t z = 0; z < the_case.zones.size(); ++z) {
+    for (const std::size_t i : into_zone[z]) add_flow(entering[z], the_case, i, 1.0);
+  }
   for (const std::size_t i : drifting) {
-    entering[the_case.flows[i].from.index].push_back({drift(i), -1.0});
-    entering[the_case.flows[i].to.index].push_back({drift(i), 1.0});
+    add_drift(entering[the_case.flows[i].from.index], the_case, i, -1.0);
+    add_drift(entering[the_case.flows[i].to.index], the_case, i, 1.0);
   }
   for (std::size_t z = 0; z < the_case.zones.size(); ++z) {
     FlowSystem::Row& in = entering[z];
-    FlowSystem::Row out = row_of(out_of_zone[z], -1.0);
+    FlowSystem::Row out;
+    for (const std::size_t i : out_of_zone[z]) add_flow(out, the_case, i, -1.0);
     if (!add_share_rows(the_case, out_of_zone[z], throughflow(z))) {
       known[throughflow(z)] = true;
       in.insert(in.end(), out.begin(), out.end());

@@ -42,6 +42,9 @@ struct FlowEquations {
   std::vector<std::vector<std::size_t>> out_of_zone;
   std::vector<std::vector<std::size_t>> into_zone;
   std::vector<std::size_t> drifting;  ///< exchanges that may drift
+  std::vector<bool> on_ring;   ///< one per flow: drifts and has other routes of drifting exchanges
+  std::vector<double> share;   ///< one per flow, scaled to add up; 0 without a share
+  std::vector<bool> by_share;  ///< one per flow: not given, a share (or the only rest) fixes it
   std::vector<FlowSystem::Row> rows;
   std::vector<Meaning> meanings;  ///< one per row
   std::vector<bool> known;        ///< one per variable
@@ -61,8 +64,12 @@ struct FlowEquations {
  private:
   void collect_flows(const Case& the_case);
   void find_drifting(const Case& the_case);
+  void find_rings(const Case& the_case);
+  void add_flow(FlowSystem::Row& row, const Case& the_case, std::size_t flow, double factor) const;
+  void add_drift(FlowSystem::Row& row, const Case& the_case, std::size_t flow, double factor) const;
   void add_zone_rows(const Case& the_case);
   void add_drift_rows(const Case& the_case);
+  void scale_shares(const Case& the_case);
   bool add_share_rows(const Case& the_case, const std::vector<std::size_t>& leaving,
                       std::size_t total);
 };

@@ -39,6 +39,28 @@ std::vector<Eigen::VectorXd> null_vectors(const Eigen::MatrixXd& r1, const Eigen
   return vectors;
 }
 
+/// One term per variable, those that cancel taken out.
+void merge_terms(FlowSystem::Row& row) {
+  std::ranges::sort(row, {}, &FlowSystem::Term::variable);
+  FlowSystem::Row merged;
+  double largest = 0.0;  // of the terms that made up merged.back()
+  const auto drop_cancelled = [&] {
+    if (!merged.empty() && std::abs(merged.back().factor) <= 1e-14 * largest) merged.pop_back();
+  };
+  for (const FlowSystem::Term& term : row) {
+    if (!merged.empty() && merged.back().variable == term.variable) {
+      merged.back().factor += term.factor;
+      largest = std::max(largest, std::abs(term.factor));
+      continue;
+    }
+    drop_cancelled();
+    merged.push_back(term);
+    largest = std::abs(term.factor);
+  }
+  drop_cancelled();
+  row = std::move(merged);
+}
+
 /// One independent part of the equations, factored.
 class CoreSolver {
  public:
@@ -198,7 +220,7 @@ struct FlowSystem::Peeling {
 FlowSystem::FlowSystem(std::vector<Row> rows, std::vector<bool> known)
     : rows_(std::move(rows)), known_(std::move(known)) {
   for (Row& row : rows_) {
-    std::erase_if(row, [](const Term& term) { return !(std::abs(term.factor) > 0.0); });
+    merge_terms(row);
     n_terms_ += row.size();
   }
   Peeling peeling(rows_, known_);

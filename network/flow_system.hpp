@@ -22,7 +22,7 @@ class FlowSystem {
   using Row = std::vector<Term>;
 
   /// @param known one per variable
-  /// @param rows  each with at most one term per variable
+  /// @param rows  terms of the same variable are added up
   FlowSystem(std::vector<Row> rows, std::vector<bool> known);
   ~FlowSystem();
   FlowSystem(const FlowSystem&) = delete;
