@@ -213,7 +213,10 @@ std::optional<FlowBalance> FlowBalance::solve(const Case& the_case,
     for (std::size_t i = 0; i < equations.n_flows; ++i) largest[i] = std::max(largest[i], x[i]);
   }
   if (checks.found_any()) return std::nullopt;
-  for (std::size_t i = 0; i < equations.n_flows; ++i) carries[i] = largest[i] > 0.0;
+  for (std::size_t i = 0; i < equations.n_flows; ++i) {
+    // A share of something is something, be it lost in rounding.
+    carries[i] = largest[i] > 0.0 || (equations.by_share[i] && equations.share[i] > 0.0);
+  }
   checks.graph(carries);
   if (checks.found_any()) return std::nullopt;
 

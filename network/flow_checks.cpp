@@ -272,9 +272,11 @@ void FlowChecks::tell_unbalanced(std::span<const Place> places, double in, doubl
 void FlowChecks::missed_rows(const FlowEquations& equations, const FlowSystem& system,
                              std::span<const double> x, const std::string& when) {
   using Kind = FlowEquations::Meaning::Kind;
+  double largest = 0.0;
+  for (std::size_t i = 0; i < equations.n_flows; ++i) largest = std::max(largest, std::abs(x[i]));
   std::set<Place> told;
   for (std::size_t r = 0; r < equations.rows.size(); ++r) {
-    if (system.relative_residual(r, x) <= kAgreement) continue;
+    if (system.relative_residual(r, x, 1e-12 * largest) <= kAgreement) continue;
     const FlowEquations::Meaning& meaning = equations.meanings[r];
     if (meaning.kind == Kind::drift) continue;
     Place place{Place::Kind::zone, meaning.index};

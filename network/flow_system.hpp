@@ -39,8 +39,9 @@ class FlowSystem {
   [[nodiscard]] std::vector<std::vector<Term>> free_directions(std::size_t most) const;
 
   [[nodiscard]] std::span<const Row> rows() const { return rows_; }
-  /// |sum| of a row over its largest term; 0 when all terms are 0.
-  [[nodiscard]] double relative_residual(std::size_t row, std::span<const double> x) const;
+  /// |sum| of a row over its largest term; 0 when |sum| is not above `rounding`.
+  [[nodiscard]] double relative_residual(std::size_t row, std::span<const double> x,
+                                         double rounding) const;
   [[nodiscard]] std::size_t n_terms() const { return n_terms_; }
 
  private:
