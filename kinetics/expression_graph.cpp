@@ -258,6 +258,40 @@ NodeId ExpressionGraph::step(NodeId a) {
   return make(Op::step, a, NodeId(), 0.0);
 }
 
+NodeId ExpressionGraph::rebuild(const Node& node, NodeId a, NodeId b) {
+  switch (node.op) {
+    case Op::constant:
+      return constant(node.value);
+    case Op::input:
+      return input(node.a.value());
+    case Op::add:
+      return add(a, b);
+    case Op::subtract:
+      return subtract(a, b);
+    case Op::multiply:
+      return multiply(a, b);
+    case Op::divide:
+      return divide(a, b);
+    case Op::power:
+      return power(a, b);
+    case Op::negate:
+      return negate(a);
+    case Op::exp:
+      return exp(a);
+    case Op::log:
+      return log(a);
+    case Op::sqrt:
+      return sqrt(a);
+    case Op::minimum:
+      return minimum(a, b);
+    case Op::maximum:
+      return maximum(a, b);
+    case Op::step:
+      return step(a);
+  }
+  return a;
+}
+
 std::vector<std::size_t> ExpressionGraph::inputs_of(NodeId id) const {
   std::vector<bool> seen(id.value() + 1, false);
   std::vector<NodeId> open{id};

@@ -61,6 +61,9 @@ class ExpressionGraph {
   NodeId sqrt(NodeId a);
   NodeId minimum(NodeId a, NodeId b);
   NodeId maximum(NodeId a, NodeId b);
+  /// The operation of a node (of this or another graph) on operands of this graph; leaves as they
+  /// are.
+  NodeId rebuild(const Node& node, NodeId a, NodeId b);
 
   /// Exact derivative of `of` with respect to an input, as a node of this graph (memoised). Finite
   /// wherever the function is smooth (x ^ 3 at 0); at a kink of minimum or maximum the derivative
