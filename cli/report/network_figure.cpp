@@ -206,11 +206,11 @@ class Drawing {
   }
 
   static std::string flow_words(const NetworkDrawing::Arrow& arrow) {
-    if (!arrow.exchange) return shown(arrow.flow, 3);
+    if (!arrow.exchange) return brief(arrow.flow, 3);
     if (std::fabs(arrow.flow - arrow.back) <= 1e-6 * std::max(arrow.flow, arrow.back)) {
-      return "\u21C4 " + shown(arrow.flow, 3);
+      return "\u21C4 " + brief(arrow.flow, 3);
     }
-    return shown(arrow.flow, 3) + " \u21C4 " + shown(arrow.back, 3);
+    return brief(arrow.flow, 3) + " \u21C4 " + brief(arrow.back, 3);
   }
 
   [[nodiscard]] double width_of(double flow) const {
@@ -358,7 +358,7 @@ class Drawing {
     rows.emplace_back(
         fmt::format("<path class=\"pipe\" stroke-width=\"{:.1f}\" d=\"M2-5h24\"/>{}", wide,
                     head_of({25.0, -5.0}, {40.0, -5.0}, 3.5 + 0.8 * wide, "head")),
-        fmt::format("flow in m\u00B3/d: width goes with its root; this is {}", shown(widest_, 3)));
+        fmt::format("flow in m\u00B3/d: width goes with its root; this is {}", brief(widest_, 3)));
     rows.emplace_back("<path class=\"pipe\" stroke-width=\"3\" d=\"M12-5h20\"/>" +
                           head_of({12.0, -5.0}, {2.0, -5.0}, 6.0, "head") +
                           head_of({30.0, -5.0}, {40.0, -5.0}, 6.0, "head"),

@@ -87,6 +87,14 @@ std::string shown(double value, int digits) {
   return (value < 0.0 ? "\u2212" : "") + text;
 }
 
+std::string brief(double value, int digits) {
+  std::string text = shown(value, digits);
+  if (text.find('.') == std::string::npos || text.find('e') != std::string::npos) return text;
+  while (text.back() == '0') text.pop_back();
+  if (text.back() == '.') text.pop_back();
+  return text;
+}
+
 std::string html_of(const HtmlTable& table) {
   const auto word = [&](std::size_t column) {
     return column < table.left.size() && table.left[column] ? " class=w" : "";

@@ -14,6 +14,9 @@ namespace stillzone::cli {
 /// minus sign, "n/a" when it is not finite.
 [[nodiscard]] std::string shown(double value, int digits = 4);
 
+/// The same without trailing zeros, for sentences and drawings.
+[[nodiscard]] std::string brief(double value, int digits = 4);
+
 /// A table of a report; the numbers stand right, the first column left.
 struct HtmlTable {
   std::string caption;

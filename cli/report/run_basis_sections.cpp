@@ -97,7 +97,7 @@ std::string inputs_section(const RunReportInput& input, const NetworkFacts& fact
   std::string html = fmt::format(
       "<p>Liquid volume {} m\u00B3, feed {} m\u00B3/d, nominal retention time {} d. Kinetic model: "
       "{} ({}).</p>\n",
-      shown(facts.volume), shown(facts.feed), shown(facts.retention),
+      brief(facts.volume), brief(facts.feed), brief(facts.retention),
       html_escaped(the_case.kinetics.name), html_escaped(the_case.kinetics.title));
   html += html_of(zone_inputs(the_case, facts)) + html_of(flow_inputs(input, facts));
   if (!the_case.schedules.empty()) {

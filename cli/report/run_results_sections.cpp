@@ -17,7 +17,7 @@ using network::NamedValue;
 using network::PlaceState;
 
 std::string with_unit(double value, const std::string& unit) {
-  return unit.empty() || unit == "1" ? shown(value) : shown(value) + " " + unit;
+  return unit.empty() || unit == "1" ? brief(value) : brief(value) + " " + unit;
 }
 
 /// The places of a kind with the lowest and the highest value of a quantity.
@@ -49,7 +49,7 @@ Extremes extremes_of(const std::vector<PlaceState>& zones, const std::string& na
 std::string when(const network::RunResult& result) {
   if (result.kind == "steady") return "At steady state";
   if (result.kind == "periodic") return "At the start of its repeating cycle";
-  return "At the end of day " + shown(result.until);
+  return "At the end of day " + brief(result.until);
 }
 
 std::string gas_sentence(const RunReportInput& input, const NetworkFacts& facts) {
@@ -60,7 +60,7 @@ std::string gas_sentence(const RunReportInput& input, const NetworkFacts& facts)
     gas += headspace.gas_flow_normal_dry;
   }
   const std::string feed = fmt::format("from {} m\u00B3/d of feed (nominal retention time {} d)",
-                                       shown(facts.feed), shown(facts.retention, 3));
+                                       brief(facts.feed), brief(facts.retention, 3));
   if (input.result.headspaces.empty()) {
     return fmt::format("{} the case has no headspace, so no gas is computed, {}.",
                        when(input.result), feed);
@@ -70,7 +70,7 @@ std::string gas_sentence(const RunReportInput& input, const NetworkFacts& facts)
   return fmt::format(
       "{} the digester gives <b>{} m\u00B3/d of methane</b> (0 \u00B0C, 1.01325 "
       "bar), {} % of its dry gas, {}.",
-      when(input.result), shown(methane), shown(100.0 * methane / gas, 3), feed);
+      when(input.result), brief(methane), brief(100.0 * methane / gas, 3), feed);
 }
 
 std::string water_sentence(const RunReportInput& input) {
@@ -84,9 +84,9 @@ std::string water_sentence(const RunReportInput& input) {
     const auto value = value_at(outlet.state, lead);
     const auto ph = value_at(outlet.state, "pH");
     if (!value) continue;
-    text += fmt::format("{} leaves with <b>{} {}</b>", html_escaped(outlet.name),
+    text += fmt::format("Outlet {} leaves with <b>{} {}</b>", html_escaped(outlet.name),
                         html_escaped(lead), html_escaped(with_unit(value->value, value->unit)));
-    if (ph && has_vfa) text += fmt::format(" and pH {}", shown(ph->value, 3));
+    if (ph && has_vfa) text += fmt::format(" and pH {}", brief(ph->value, 3));
     text += ", ";
   }
   if (input.result.zones.size() == 1) {
@@ -97,10 +97,10 @@ std::string water_sentence(const RunReportInput& input) {
   const double best_value = has_vfa ? range.low : range.high;
   const double worst_value = has_vfa ? range.high : range.low;
   text +=
-      fmt::format("while the zones run from {} to {}: <b>the worst is {}</b>", shown(best_value),
+      fmt::format("while the zones run from {} to {}: <b>the worst is {}</b>", brief(best_value),
                   html_escaped(with_unit(worst_value, range.unit)), html_escaped(worst->place));
   const auto ph = value_at(*worst, "pH");
-  if (ph && has_vfa) text += fmt::format(" (pH {})", shown(ph->value, 3));
+  if (ph && has_vfa) text += fmt::format(" (pH {})", brief(ph->value, 3));
   return text + ".";
 }
 
@@ -113,7 +113,7 @@ std::string balance_sentence(const network::RunResult& result) {
     names += (names.empty() ? "" : ", ") + balance.name;
   }
   return fmt::format(
-      "The balances of {} close to {} of what went in{}.", html_escaped(names), shown(worst, 2),
+      "The balances of {} close to {} of what went in{}.", html_escaped(names), brief(worst, 2),
       result.warnings.empty() ? ""
                               : fmt::format("; {} warning{} stand{} below", result.warnings.size(),
                                             result.warnings.size() == 1 ? "" : "s",
@@ -266,21 +266,21 @@ std::string network_section(const RunReportInput& input, const NetworkFacts& fac
       findings += fmt::format(
           "<li><b>{}</b> is stagnant: it turns over once in {} d, more than {} times the nominal "
           "retention time; it holds {} % of the volume.</li>",
-          name, shown(zone.turnover, 3), kStagnantTurnovers,
-          shown(100.0 * input.the_case.zones[z].volume.value() / facts.volume, 3));
+          name, brief(zone.turnover, 3), kStagnantTurnovers,
+          brief(100.0 * input.the_case.zones[z].volume.value() / facts.volume, 3));
     }
     if (zone.short_circuit) {
       findings += fmt::format(
           "<li>Short circuit through <b>{}</b>: {} % of the feed enters it and {} m\u00B3/d leave "
           "the digester from it; it turns over in {} d.</li>",
-          name, shown(100.0 * zone.feed / facts.feed, 3), shown(zone.drawn, 3),
-          shown(zone.turnover, 2));
+          name, brief(100.0 * zone.feed / facts.feed, 3), brief(zone.drawn, 3),
+          brief(zone.turnover, 2));
     }
   }
   if (facts.bypass > 0.0) {
     findings +=
         fmt::format("<li>{} % of the feed goes straight to an outlet and meets no zone.</li>",
-                    shown(100.0 * facts.bypass / facts.feed, 3));
+                    brief(100.0 * facts.bypass / facts.feed, 3));
   }
   if (findings.empty())
     return html + "<p>No zone is stagnant and no short circuit was found.</p>\n";

@@ -79,7 +79,7 @@ NetworkDrawing network_drawing(const RunReportInput& input, const NetworkFacts& 
     box.name = zone.name;
     box.volume = zone.volume.value();
     box.note =
-        fmt::format("{} m\u00B3, {} d", shown(box.volume, 3), shown(facts.zones[z].turnover, 2));
+        fmt::format("{} m\u00B3, {} d", brief(box.volume, 3), brief(facts.zones[z].turnover, 2));
     box.stagnant = facts.zones[z].stagnant;
     box.short_circuit = facts.zones[z].short_circuit;
     if (zone.gas) box.headspace = zone.gas->to.value();
@@ -96,7 +96,7 @@ NetworkDrawing network_drawing(const RunReportInput& input, const NetworkFacts& 
     NetworkDrawing::Box box;
     box.kind = kind;
     box.name = name;
-    box.note = shown(flow, 3) + " m\u00B3/d";
+    box.note = brief(flow, 3) + " m\u00B3/d";
     drawing.boxes.push_back(box);
   };
   for (std::size_t f = 0; f < fed.size(); ++f) {
@@ -110,7 +110,7 @@ NetworkDrawing network_drawing(const RunReportInput& input, const NetworkFacts& 
     dome.name = headspace.name;
     for (const auto& result : input.result.headspaces) {
       if (result.name != headspace.name) continue;
-      dome.note = fmt::format("{} m\u00B3/d CH\u2084", shown(result.methane_flow_normal, 3));
+      dome.note = fmt::format("{} m\u00B3/d CH\u2084", brief(result.methane_flow_normal, 3));
     }
     drawing.domes.push_back(dome);
   }
