@@ -206,7 +206,9 @@ TEST(GasPipe, NothingComesInThroughItWhileTheHeadspaceIsBelowTheOutside) {
   EXPECT_GT(flow->values.back(), 1000.0);
   for (std::size_t k = 0; k < flow->values.size(); ++k) {
     EXPECT_GE(flow->values[k], 0.0);
-    if (pressure->values[k] < 1.013) EXPECT_EQ(flow->values[k], 0.0);
+    if (pressure->values[k] < 1.013) {
+      EXPECT_EQ(flow->values[k], 0.0);
+    }
   }
 }
 
