@@ -29,7 +29,7 @@ std::vector<double> uneven_state(const Case& the_case, const StateLayout& layout
     if (at.in_zone && at.item >= layout.n_components()) {
       y[k] += 0.2 * (wobble - 0.75);
     } else if (at.in_zone) {
-      y[k] = wobble * (y[k] + the_case.kinetics.components[at.item].floor);
+      y[k] = wobble * (y[k] > 0.0 ? y[k] : 1.0);
     } else {
       y[k] *= wobble;
     }
