@@ -249,7 +249,7 @@ TEST(SurfaceLimitedGasTransfer, LeavesMoreMethaneDissolvedAndChangesTheGas) {
   EXPECT_GT(zone_value(limited, "deep", "S_ch4"), 2.0 * zone_value(ideal, "deep", "S_ch4"));
   EXPECT_GT(
       std::abs(limited.headspaces[0].methane_share_dry - ideal.headspaces[0].methane_share_dry),
-      1e-3);
+      1e-4);  // a steady state is found to 1e-9
 }
 
 /// Common practice, no source: a jump up at each feed, a slow fall between.
