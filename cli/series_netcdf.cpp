@@ -132,7 +132,6 @@ void write_names(const SeriesFile& file, const PlaceKind& kind, int place_dimens
   const int variable =
       file.variable(kind.name + "_name", NC_CHAR, {place_dimension, length_dimension});
   file.text(variable, "long_name", "name of the " + kind.name);
-  file.text(variable, "cf_role", "timeseries_id");
   std::string names;
   for (std::string name : kind.places) {
     name.resize(length, '\0');
@@ -177,7 +176,6 @@ core::Result<core::Done> write_series_netcdf(const std::filesystem::path& path,
     file.text(NC_GLOBAL, "title", title);
     file.text(NC_GLOBAL, "source", "Stillzone " STILLZONE_VERSION);
     file.text(NC_GLOBAL, "history", history);
-    file.text(NC_GLOBAL, "featureType", "timeSeries");
     const int time_dimension = file.dimension("time", result.series.time.size());
     const int time = file.variable("time", NC_DOUBLE, {time_dimension});
     file.text(time, "units", "days since 2000-01-01 00:00:00");
