@@ -44,8 +44,8 @@ std::vector<std::string> names_of(const std::vector<Command>& commands) {
 
 /// Commands of the contract that later versions bring.
 bool comes_later(const std::string& name) {
-  static const std::vector<std::string> later = {"tracer",   "plan",      "washout",
-                                                 "retrofit", "calibrate"};
+  static const std::vector<std::string> later = {"tracer", "plan", "washout", "retrofit",
+                                                 "calibrate"};
   return std::find(later.begin(), later.end(), name) != later.end();
 }
 
@@ -123,10 +123,9 @@ Parsed parse_command_line(const std::vector<std::string>& arguments,
       return complain(console, fmt::format("stillzone: \"{}\" is not in this version yet.", name),
                       "");
     }
-    return complain(console,
-                    fmt::format("stillzone: \"{}\" is no command. {}", name,
-                                core::name_hint(name, names)),
-                    "");
+    return complain(
+        console,
+        fmt::format("stillzone: \"{}\" is no command. {}", name, core::name_hint(name, names)), "");
   }
   const Command& command = commands[static_cast<std::size_t>(found - names.begin())];
   CommandLine line;

@@ -61,8 +61,8 @@ std::string NetworkView::stream_table() const {
     }
     if (flow.schedule) how += ", schedule " + case_.schedules[flow.schedule->value()].name;
     table.row({case_.name_of(streams[s].from), case_.name_of(streams[s].to),
-               short_number(rates_[s]),
-               total_feed_ > 0.0 ? percent(rates_[s] / total_feed_) : "-", how});
+               short_number(rates_[s]), total_feed_ > 0.0 ? percent(rates_[s] / total_feed_) : "-",
+               how});
   }
   return table.text();
 }
@@ -74,13 +74,12 @@ std::vector<std::string> NetworkView::remarks() const {
   std::vector<std::string> remarks;
   const double retention = total_feed_ > 0.0 ? total_volume_ / total_feed_ : 0.0;
   for (std::size_t z = 0; z < case_.zones.size(); ++z) {
-    const double turnover =
-        inflow_[z] > 0.0 ? case_.zones[z].volume.value() / inflow_[z] : 0.0;
+    const double turnover = inflow_[z] > 0.0 ? case_.zones[z].volume.value() / inflow_[z] : 0.0;
     if (turnover > kSlow * retention && retention > 0.0) {
-      remarks.push_back(fmt::format("zone {} is turned over once in {} d, {:.1f} times V/Q: it "
-                                    "stands still",
-                                    case_.zones[z].name, short_number(turnover),
-                                    turnover / retention));
+      remarks.push_back(
+          fmt::format("zone {} is turned over once in {} d, {:.1f} times V/Q: it "
+                      "stands still",
+                      case_.zones[z].name, short_number(turnover), turnover / retention));
     }
   }
   const auto streams = balance_.streams();

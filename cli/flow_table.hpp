@@ -19,7 +19,8 @@ class NetworkView {
   [[nodiscard]] double total_feed() const { return total_feed_; }      ///< [m3/d]
   [[nodiscard]] std::string zone_table() const;
   [[nodiscard]] std::string stream_table() const;
-  /// Plain sentences: zones that turn over slowly, feed that meets no zone, warnings of the readers.
+  /// Plain sentences: zones that turn over slowly, feed that meets no zone, warnings of the
+  /// readers.
   [[nodiscard]] std::vector<std::string> remarks() const;
 
  private:

@@ -31,7 +31,8 @@ void Progress::show(double share, double time_d) {
   if (share > 0.0) {
     const int filled = std::clamp(static_cast<int>(kWidth * share), 0, kWidth);
     const double passed = std::chrono::duration<double>(now - start_).count();
-    line = fmt::format("[{}{}] {:3.0f} %  day {:.1f}  about {:.0f} s left", std::string(static_cast<std::size_t>(filled), '='),
+    line = fmt::format("[{}{}] {:3.0f} %  day {:.1f}  about {:.0f} s left",
+                       std::string(static_cast<std::size_t>(filled), '='),
                        std::string(static_cast<std::size_t>(kWidth - filled), ' '), 100.0 * share,
                        time_d, passed * (1.0 - share) / share);
   }

@@ -9,8 +9,8 @@ namespace stillzone::cli {
 std::string series_csv(const network::Series& series) {
   std::string text = "time_d";
   for (const auto& column : series.columns) {
-    text += "," + core::csv_cell(
-                      fmt::format("{}.{} [{}]", column.place, column.quantity, column.unit));
+    text +=
+        "," + core::csv_cell(fmt::format("{}.{} [{}]", column.place, column.quantity, column.unit));
   }
   text += "\n";
   for (std::size_t i = 0; i < series.time.size(); ++i) {

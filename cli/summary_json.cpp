@@ -76,7 +76,8 @@ Json run_summary(const network::RunResult& result, const std::string& title) {
                                     {"derived", values(zone.derived)}};
   }
   summary["outlets"] = Json::object();
-  for (const auto& result_of : result.outlets) summary["outlets"][result_of.name] = outlet(result_of);
+  for (const auto& result_of : result.outlets)
+    summary["outlets"][result_of.name] = outlet(result_of);
   summary["headspaces"] = Json::object();
   for (const auto& result_of : result.headspaces) {
     summary["headspaces"][result_of.name] = headspace(result_of);

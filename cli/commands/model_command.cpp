@@ -59,9 +59,9 @@ std::string process_text(const KineticModel& model, const kinetics::ModelMatrix&
   std::string text;
   int number = 0;
   for (const auto& row : matrix.rows) {
-    text += fmt::format("  {:>2}  {}\n      rate: {}\n", ++number,
-                        row.meaning.empty() ? row.process : row.process + ": " + row.meaning,
-                        row.rate);
+    text +=
+        fmt::format("  {:>2}  {}\n      rate: {}\n", ++number,
+                    row.meaning.empty() ? row.process : row.process + ": " + row.meaning, row.rate);
     for (const auto& entry : row.entries) {
       text += fmt::format("      {:>12}  {:<8} {}\n", fmt::format("{:+.6g}", entry.value),
                           model.components[entry.component].name, entry.written);
@@ -72,7 +72,8 @@ std::string process_text(const KineticModel& model, const kinetics::ModelMatrix&
 
 std::string expressions(const std::vector<kinetics::NamedExpression>& list) {
   std::string text;
-  for (const auto& [name, expression] : list) text += fmt::format("  {:<12} {}\n", name, expression);
+  for (const auto& [name, expression] : list)
+    text += fmt::format("  {:<12} {}\n", name, expression);
   return text;
 }
 
@@ -121,7 +122,8 @@ int show(const CommandLine& line, Console& console) {
   }
   const auto matrix = kinetics::model_matrix(*model);
   const auto audit = kinetics::audit_model(*model);
-  console.out << model->name << ": " << model->title << "\n" << model->source << "\n"
+  console.out << model->name << ": " << model->title << "\n"
+              << model->source << "\n"
               << "\nComponents (contents per unit: kg COD, kmol C, kmol N, kmol charge)\n"
               << component_table(*model) << "\nProcesses (coefficients at 35 degC)\n"
               << process_text(*model, matrix);
@@ -133,7 +135,8 @@ int show(const CommandLine& line, Console& console) {
     console.out << "\nGas transfer [gas unit per m3 of liquid and d]\n"
                 << expressions(matrix.transfers);
   }
-  console.out << "\nParameters\n" << parameter_table(matrix)
+  console.out << "\nParameters\n"
+              << parameter_table(matrix)
               << "\nAudit: what one unit of each process makes out of nothing (closed: within "
                  "1e-12 of its turnover; -: not touched)\n"
               << audit_table(audit);

@@ -46,11 +46,11 @@ core::Result<core::Done> write_files(const CommandLine& line, const LoadedCase& 
     const RunReportInput input{.the_case = loaded.the_case,
                                .balance = loaded.balance,
                                .result = result,
-                               .version = STILLZONE_VERSION,
-                               .command_line = line.whole,
-                               .input_name = line.input,
-                               .input_text = loaded.text,
-                               .date = today()};
+                               .provenance = {.version = STILLZONE_VERSION,
+                                              .input_name = line.input,
+                                              .input_text = loaded.text,
+                                              .command_line = line.whole,
+                                              .date = today()}};
     done = folder.write("report.html", run_report_page(input));
   }
   if (done) done = folder.commit();
