@@ -1,0 +1,291 @@
+#!/usr/bin/env python3
+"""The built program as its users meet it: output, messages, exit codes, files left behind.
+
+Usage: program_test.py PROGRAM SOURCE_DIR [unittest arguments]
+"""
+import json
+import os
+import pathlib
+import subprocess
+import sys
+import tempfile
+import unittest
+
+PROGRAM = pathlib.Path(sys.argv[1]).resolve()
+SOURCE = pathlib.Path(sys.argv[2]).resolve()
+CASES = SOURCE / "cases"
+BROKEN = SOURCE / "tests" / "program" / "broken"
+
+
+def run(*arguments, cwd=None):
+    return subprocess.run([str(PROGRAM), *map(str, arguments)], cwd=cwd, capture_output=True,
+                          text=True, timeout=240)
+
+
+class InFolder(unittest.TestCase):
+    """Each test has an empty folder of its own to work in."""
+
+    def setUp(self):
+        self._folder = tempfile.TemporaryDirectory()
+        self.addCleanup(self._folder.cleanup)
+        self.folder = pathlib.Path(self._folder.name)
+
+    def left_behind(self):
+        return sorted(p.name for p in self.folder.iterdir())
+
+
+class BrokenFiles(InFolder):
+    """Every wrong file: its exact messages, exit code 1, nothing left behind."""
+
+    def check_folder(self, kind, command):
+        files = sorted((BROKEN / kind).glob("*.json"))
+        for path in files:
+            with self.subTest(path.name):
+                done = subprocess.run([str(PROGRAM), command, path.name], cwd=path.parent,
+                                      capture_output=True, text=True, timeout=60)
+                self.assertEqual(done.returncode, 1, done.stderr)
+                self.assertEqual(done.stdout, "")
+                self.assertEqual(done.stderr, path.with_suffix(".expected").read_text())
+                self.assertFalse((path.parent / (path.stem + ".out")).exists())
+        return len(files)
+
+    def test_cases(self):
+        self.check_folder("cases", "run")
+
+    def test_models(self):
+        self.check_folder("models", "model")
+
+    def test_there_are_at_least_40(self):
+        self.assertGreaterEqual(len(list(BROKEN.glob("*/*.json"))), 40)
+
+
+class WrongCommandLines(InFolder):
+    def check(self, arguments, message):
+        done = run(*arguments, cwd=self.folder)
+        self.assertEqual(done.returncode, 2, done.stderr)
+        self.assertEqual(done.stdout, "")
+        self.assertIn(message, done.stderr)
+        self.assertEqual(self.left_behind(), [])
+
+    def test_mistyped_command(self):
+        self.check(["chek", "x.json"], '"chek" is no command. Did you mean "check"?')
+
+    def test_mistyped_flag(self):
+        self.check(["run", "x.json", "--ouput", "y"],
+                   'flag "--ouput" is not known here. Did you mean "--out"?')
+
+    def test_flag_of_another_command(self):
+        self.check(["model", "adm1", "--set", "/a=1"], 'flag "--set" is not known here.')
+
+    def test_missing_input(self):
+        self.check(["run"], "stillzone run: no CASE was given.")
+
+    def test_too_many_inputs(self):
+        self.check(["check", "a.json", "b.json"], '"b.json" is one argument too many')
+
+    def test_nothing_at_all(self):
+        done = run(cwd=self.folder)
+        self.assertEqual(done.returncode, 2)
+        self.assertIn("Usage: stillzone COMMAND", done.stderr)
+
+    def test_unknown_schema(self):
+        self.check(["schema", "cases"], 'there is no schema "cases". Did you mean "case"?')
+
+
+class Help(InFolder):
+    def test_every_command_has_an_example(self):
+        overview = run("help").stdout
+        for command in ("check", "run", "model", "schema"):
+            self.assertIn("\n  " + command + " ", overview)
+            done = run("help", command)
+            self.assertEqual(done.returncode, 0)
+            self.assertIn("Example:\n  stillzone " + command, done.stdout)
+            self.assertEqual(run(command, "--help").stdout, done.stdout)
+
+    def test_version(self):
+        done = run("--version")
+        self.assertEqual((done.returncode, done.stderr), (0, ""))
+        self.assertRegex(done.stdout, r"^stillzone \d+\.\d+\.\d+\n$")
+
+
+class Files(InFolder):
+    def test_missing_and_folder(self):
+        done = run("check", "nothing.json", cwd=self.folder)
+        self.assertEqual(done.returncode, 1)
+        self.assertEqual(done.stderr,
+                         "nothing.json: there is no such file; an input file must exist. "
+                         "Check the name and the folder you are in.\n")
+        done = run("check", str(self.folder))
+        self.assertEqual(done.returncode, 1)
+        self.assertIn("this is a folder; an input file is needed.", done.stderr)
+
+    def test_output_is_replaced_only_when_it_is_ours(self):
+        case = CASES / "ideal_tank.json"
+        for _ in range(2):
+            done = run("run", case, "--out", "here.out", cwd=self.folder)
+            self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertEqual(self.left_behind(), ["here.out"])
+        (self.folder / "mine").mkdir()
+        (self.folder / "mine" / "thesis.txt").write_text("precious")
+        done = run("run", case, "--out", "mine", cwd=self.folder)
+        self.assertEqual(done.returncode, 1)
+        self.assertIn("mine exists and was not written by stillzone.", done.stderr)
+        self.assertEqual((self.folder / "mine" / "thesis.txt").read_text(), "precious")
+        done = run("run", case, "--out", "no/such/folder", cwd=self.folder)
+        self.assertEqual(done.returncode, 1)
+        self.assertIn("does not exist", done.stderr)
+        self.assertEqual(self.left_behind(), ["here.out", "mine"])
+
+
+class Settings(InFolder):
+    def test_set_changes_a_value(self):
+        done = run("check", CASES / "ideal_tank.json", "--set", "/title=Renamed")
+        self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertIn("Renamed", done.stdout)
+
+    def test_set_complains(self):
+        done = run("check", CASES / "ideal_tank.json", "--set", "/zone/volume=1 m3")
+        self.assertEqual(done.returncode, 1)
+        self.assertIn('no "zone" in "/"', done.stderr)
+        self.assertIn('Did you mean "zones"?', done.stderr)
+
+
+class Summary(InFolder):
+    def test_has_the_keys_of_the_contract(self):
+        done = run("run", CASES / "three_zone_example.json", "--json", "--quiet",
+                   "--set", "/run/until=2 d", cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertEqual(done.stderr, "")
+        summary = json.loads(done.stdout)
+        for key in ("zones", "outlets", "headspaces", "flows", "balances", "solver", "warnings"):
+            self.assertIn(key, summary)
+        self.assertIn("pH", summary["zones"]["core"]["state"])
+        self.assertIn("S_ac", summary["zones"]["rim"]["state"])
+        self.assertAlmostEqual(summary["outlets"]["overflow"]["flow_m3_d"], 170.0, places=9)
+        dome = summary["headspaces"]["dome"]
+        for key in ("pressure_bar", "gas_flow_m3_d", "gas_flow_normal_dry_m3_d",
+                    "methane_flow_normal_m3_d"):
+            self.assertGreater(dome[key], 0.0)
+        self.assertIn("S_gas_ch4", dome["state"])
+        for name in ("water", "COD", "C", "N"):
+            self.assertLess(abs(summary["balances"][name]), 1e-9, name)
+        for key in ("unknowns", "steps", "residual_calls", "jacobian_calls", "seconds"):
+            self.assertIn(key, summary["solver"])
+        for flow in summary["flows"]:
+            self.assertEqual(sorted(flow), ["flow_m3_d", "from", "to"])
+        written = json.loads((self.folder / "three_zone_example.out" / "summary.json").read_text())
+        self.assertEqual(written, summary)
+
+    def test_series_has_units_and_starts_at_zero(self):
+        done = run("run", CASES / "three_zone_example.json", "--quiet", "--set", "/run/until=1 d",
+                   cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        folder = self.folder / "three_zone_example.out"
+        lines = (folder / "series.csv").read_text().splitlines()
+        header = lines[0].split(",")
+        self.assertEqual(header[0], "time_d")
+        self.assertIn("core.S_ac [kg COD/m3]", header)
+        self.assertEqual(float(lines[1].split(",")[0]), 0.0)
+        self.assertEqual(float(lines[-1].split(",")[0]), 1.0)
+        try:
+            import netCDF4
+        except ImportError:
+            self.skipTest("python3-netcdf4 is not installed")
+        with netCDF4.Dataset(folder / "series.nc") as file:
+            self.assertEqual(file.Conventions, "CF-1.8")
+            values = file["zone_S_ac"][:]
+            column = header.index("core.S_ac [kg COD/m3]")
+            self.assertEqual(values[0, 0], float(lines[1].split(",")[column]))
+            self.assertEqual(file["zone_S_ac"].units, "kg/m3")
+            names = ["".join(c.decode() for c in row if c) for row in file["zone_name"][:].data]
+            self.assertEqual(names[0].rstrip("\0"), "core")
+
+
+class ShippedCases(InFolder):
+    """Every shipped case is valid, and its balances close."""
+
+    def cases(self):
+        for path in sorted(CASES.glob("*.json")):
+            if '"case/1"' in path.read_text():
+                yield path
+
+    def test_check(self):
+        for path in self.cases():
+            with self.subTest(path.name):
+                done = run("check", path, cwd=self.folder)
+                self.assertEqual(done.returncode, 0, done.stderr)
+                self.assertEqual(done.stderr, "")
+        self.assertEqual(self.left_behind(), [])
+
+    def test_run(self):
+        for path in self.cases():
+            with self.subTest(path.name):
+                done = run("run", path, "--json", "--quiet", cwd=self.folder)
+                self.assertEqual(done.returncode, 0, done.stderr)
+                for name, error in json.loads(done.stdout)["balances"].items():
+                    self.assertLess(abs(error), 1e-9, name)
+                self.assertTrue((self.folder / (path.stem + ".out") / "report.html").exists())
+
+    def test_schema_accepts_them(self):
+        try:
+            import jsonschema
+        except ImportError:
+            self.skipTest("python3-jsonschema is not installed")
+        schema = json.loads(run("schema", "case").stdout)
+        jsonschema.Draft7Validator.check_schema(schema)
+        validator = jsonschema.Draft7Validator(schema)
+        for path in self.cases():
+            with self.subTest(path.name):
+                self.assertEqual(list(validator.iter_errors(without_comments(path.read_text()))), [])
+        model_schema = json.loads(run("schema", "model").stdout)
+        jsonschema.Draft7Validator.check_schema(model_schema)
+        models = jsonschema.Draft7Validator(model_schema)
+        for path in sorted((SOURCE / "kinetics" / "models").glob("*.json")):
+            with self.subTest(path.name):
+                self.assertEqual(list(models.iter_errors(without_comments(path.read_text()))), [])
+
+
+class Models(InFolder):
+    def test_adm1_prints_its_matrix_and_audit(self):
+        done = run("model", "adm1")
+        self.assertEqual((done.returncode, done.stderr), (0, ""))
+        for text in ("S_ac", "k_m_ac", "Audit", "closed"):
+            self.assertIn(text, done.stdout)
+
+    def test_unknown_model(self):
+        done = run("model", "adm")
+        self.assertEqual(done.returncode, 1)
+        self.assertIn('Did you mean "adm1"?', done.stderr)
+
+
+def without_comments(text):
+    """JSON with // and /* */ comments -> value."""
+    out, i, quoted = [], 0, False
+    while i < len(text):
+        c = text[i]
+        if quoted:
+            out.append(c)
+            if c == "\\":
+                out.append(text[i + 1])
+                i += 1
+            elif c == '"':
+                quoted = False
+        elif c == '"':
+            quoted = True
+            out.append(c)
+        elif text.startswith("//", i):
+            while i < len(text) and text[i] != "\n":
+                i += 1
+            continue
+        elif text.startswith("/*", i):
+            i = text.index("*/", i) + 2
+            continue
+        else:
+            out.append(c)
+        i += 1
+    return json.loads("".join(out))
+
+
+if __name__ == "__main__":
+    os.environ.pop("NO_COLOR", None)
+    unittest.main(argv=[sys.argv[0], *sys.argv[3:]])
