@@ -2,7 +2,7 @@
 
 #include <fmt/format.h>
 
-#include <optional>
+#include <algorithm>
 #include <vector>
 
 #include "cli/text_table.hpp"
@@ -20,8 +20,8 @@ const NamedValue* find(const std::vector<NamedValue>& values, const std::string&
   return nullptr;
 }
 
-/// What a reader wants first of a zone: its implicit unknowns (pH), then all derived quantities; of
-/// a small model everything.
+/// What a reader wants first of a zone: its implicit unknowns (pH), the first derived quantities of
+/// the model, then its microbial groups; of a small model everything. The rest is in summary.json.
 std::vector<std::string> shown_quantities(const network::Case& the_case, const PlaceState& zone) {
   constexpr std::size_t kSmall = 8;
   std::vector<std::string> names;
@@ -30,7 +30,10 @@ std::vector<std::string> shown_quantities(const network::Case& the_case, const P
   if (model.components.size() <= kSmall) {
     for (const auto& component : model.components) names.push_back(component.name);
   }
-  for (const NamedValue& value : zone.derived) names.push_back(value.name);
+  constexpr std::size_t kDerived = 7;
+  for (std::size_t k = 0; k < std::min(kDerived, zone.derived.size()); ++k) {
+    names.push_back(zone.derived[k].name);
+  }
   for (const auto& group : model.groups) {
     if (model.components.size() > kSmall) names.push_back(model.components[group.component].name);
   }
@@ -40,7 +43,7 @@ std::vector<std::string> shown_quantities(const network::Case& the_case, const P
 /// Places down, quantities across, wrapped into blocks that fit a terminal.
 std::string place_table(const network::Case& the_case, const std::vector<PlaceState>& places,
                         const std::string& kind) {
-  constexpr std::size_t kColumns = 6;
+  constexpr std::size_t kColumns = 8;
   std::string text;
   if (places.empty()) return text;
   const auto names = shown_quantities(the_case, places.front());
