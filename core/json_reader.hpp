@@ -25,8 +25,8 @@ struct Spread {
 struct FreeQuantity {
   std::string pointer;  ///< JSON pointer of the quantity in its file
   Measure measure = Measure::share;
-  double value = 0.0;              ///< internal unit
-  std::optional<double> fit_low = {};   ///< bounds of a fit, internal unit
+  double value = 0.0;                  ///< internal unit
+  std::optional<double> fit_low = {};  ///< bounds of a fit, internal unit
   std::optional<double> fit_high = {};
   std::optional<Spread> spread = {};
 };
@@ -71,8 +71,8 @@ class ObjectReader {
   struct Limit {
     double low = -1e300;
     double high = 1e300;
-    bool low_open = false;   ///< the low end itself is not allowed
-    std::string clause;      ///< e.g. "a volume must be > 0"
+    bool low_open = false;  ///< the low end itself is not allowed
+    std::string clause;     ///< e.g. "a volume must be > 0"
   };
   static Limit positive(Measure measure);
   static Limit not_negative(Measure measure);

@@ -20,10 +20,9 @@ class ProgramDefect : public std::logic_error {
 }  // namespace stillzone::core
 
 /// SZ_REQUIRE(n == m, "n {} m {}", n, m): checks a programmer's contract and shows the values.
-#define SZ_REQUIRE(condition, ...)                                                        \
-  do {                                                                                    \
-    if (!(condition)) {                                                                   \
-      ::stillzone::core::throw_defect(#condition, __FILE__, __LINE__,                     \
-                                      ::fmt::format(__VA_ARGS__));                        \
-    }                                                                                     \
+#define SZ_REQUIRE(condition, ...)                                                                 \
+  do {                                                                                             \
+    if (!(condition)) {                                                                            \
+      ::stillzone::core::throw_defect(#condition, __FILE__, __LINE__, ::fmt::format(__VA_ARGS__)); \
+    }                                                                                              \
   } while (false)

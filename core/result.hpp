@@ -11,7 +11,7 @@ namespace stillzone::core {
 /// Why a computation ended without a result (exit code 3), in words for the user.
 struct Failure {
   std::string reason = {};    ///< what went wrong, with the number and the limit it broke
-  double time_d = 0.0;   ///< [d] model time at the failure; 0 when time plays no part
+  double time_d = 0.0;        ///< [d] model time at the failure; 0 when time plays no part
   std::string place = {};     ///< zone or headspace at fault; may be empty
   std::string quantity = {};  ///< component at fault; may be empty
   std::string got_done = {};  ///< what was reached before; may be empty
