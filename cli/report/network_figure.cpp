@@ -131,15 +131,14 @@ class Drawing {
     parts += gas();
     for (std::size_t i = 0; i < drawing_.boxes.size(); ++i) parts += box(i);
     for (std::size_t i = 0; i < drawing_.arrows.size(); ++i) parts += label(i);
-    const double legend_top = top_ + layout_.height + 2.0 * kPad;
-    parts += legend(legend_top + 8.0);
+    height_ = top_ + layout_.height + kPad;
     return fmt::format(
         "<div class=scroll><svg class=\"net\" viewBox=\"0 0 {0:.0f} {1:.0f}\" width=\"{0:.0f}\" "
         "height=\"{1:.0f}\" style=\"max-width:{2:.0f}px;min-width:min({0:.0f}px,{3:.0f}px)\" "
         "role=\"img\"><title>Zone network</title><desc>{4}</desc><defs><pattern id=\"hatch\" "
         "width=\"8\" height=\"8\" patternUnits=\"userSpaceOnUse\" patternTransform=\"rotate(45)\">"
-        "<path class=\"hatch\" d=\"M0 0v8\"/></pattern></defs>{5}</svg></div>",
-        width_, height_, 1.15 * width_, 0.8 * width_, html_escaped(in_words()), parts);
+        "<path class=\"hatch\" d=\"M0 0v8\"/></pattern></defs>{5}</svg></div>{6}",
+        width_, height_, 1.15 * width_, 0.8 * width_, html_escaped(in_words()), parts, legend());
   }
 
  private:
@@ -202,7 +201,7 @@ class Drawing {
       labels_.push_back({p.x - 0.5 * room.label_width, p.y - 0.5 * room.label_height,
                          room.label_width, room.label_height});
     }
-    width_ = std::max(layout_.width + 2.0 * kPad, 560.0);
+    width_ = layout_.width + 2.0 * kPad;
   }
 
   static std::string flow_words(const NetworkDrawing::Arrow& arrow) {
@@ -317,6 +316,24 @@ class Drawing {
     return domes;
   }
 
+  /// Name of the headspace beside a short gas arrow, on the side where it meets no other text; left
+  /// out where there is none (the tables of the report say it too).
+  [[nodiscard]] std::string stub_name(std::size_t i, double x, double y,
+                                      const std::string& name) const {
+    const double wide = text_width(name);
+    for (const double left : {x + 7.0, x - 7.0 - wide}) {
+      const auto meets = [&](const Rect& other) {
+        return other.x < left + wide && left < other.x + other.width && other.y < y + 6.0 &&
+               y - 14.0 < other.y + other.height;
+      };
+      bool free = left > 2.0 && left + wide < width_ - 2.0;
+      for (std::size_t k = 0; k < rooms_.size(); ++k) free = free && (k == i || !meets(rooms_[k]));
+      free = free && std::none_of(labels_.begin(), labels_.end(), meets);
+      if (free) return text_at(left, y, "q halo", name);
+    }
+    return "";
+  }
+
   std::string gas() {
     std::string svg;
     const std::vector<Rect> domes = dome_rects();
@@ -343,17 +360,17 @@ class Drawing {
                          end + 7.0);
       svg += head_of({at, end + 8.0}, {at, end}, 3.5, "gashead");
       if (!reaches && domes.size() > 1) {
-        svg += text_at(at + 7.0, end + 14.0, "q halo", shortened(drawing_.domes[*to].name));
+        svg += stub_name(i, at, end + 14.0, shortened(drawing_.domes[*to].name));
       }
     }
     return svg;
   }
 
-  std::string legend(double y) {
+  [[nodiscard]] std::string legend() const {
     std::vector<std::pair<std::string, std::string>> rows;
     rows.emplace_back(
         fmt::format("<rect class=\"tank\" x=\"2\" y=\"-13\" width=\"30\" height=\"18\" rx=\"4\"/>"),
-        "zone: area goes with volume, tiny ones enlarged");
+        "zone: area goes with volume, the tiniest enlarged");
     const double wide = width_of(widest_);
     rows.emplace_back(
         fmt::format("<path class=\"pipe\" stroke-width=\"{:.1f}\" d=\"M2-5h24\"/>{}", wide,
@@ -374,20 +391,15 @@ class Drawing {
         "stagnant: turnover time over 5 times the HRT");
     rows.emplace_back("<path class=\"pipe short\" stroke-width=\"3\" d=\"M2-5h38\"/>",
                       "short circuit: from feed to outlet at once");
-    const double column = 50.0 + 8.0 * 52.0;
-    const auto n_columns = static_cast<std::size_t>(std::max(1.0, std::floor(width_ / column)));
-    std::string svg;
-    const std::size_t n_rows = (rows.size() + n_columns - 1) / n_columns;
-    for (std::size_t i = 0; i < rows.size(); ++i) {
-      const double x = kPad + column * static_cast<double>(i / n_rows);
-      const double at = y + 16.0 + 25.0 * static_cast<double>(i % n_rows);
-      svg += fmt::format(
-          "<g transform=\"translate({:.1f} {:.1f})\">{}<text class=\"q\" x=\"50\" "
-          "y=\"0\">{}</text></g>",
-          x, at, rows[i].first, rows[i].second);
+    std::string html = "<ul class=key>";
+    for (const auto& [sample, words] : rows) {
+      html += fmt::format(
+          "<li><svg viewBox=\"0 -18 44 24\" width=\"44\" height=\"24\" "
+          "aria-hidden=\"true\">{}</svg>"
+          "<span>{}</span></li>",
+          sample, words);
     }
-    height_ = y + 25.0 * static_cast<double>(n_rows) + 8.0;
-    return svg;
+    return html + "</ul>";
   }
 
   /// The alternative text.

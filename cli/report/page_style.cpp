@@ -41,6 +41,8 @@ tbody tr:hover{background:var(--mark)}
 details{margin:10px 0}summary{cursor:pointer;color:var(--accent)}
 pre{font:13px/1.45 "DejaVu Sans Mono",monospace;background:var(--card);border:1px solid var(--rule);border-radius:8px;padding:10px;overflow:auto;white-space:pre-wrap;overflow-wrap:anywhere;tab-size:2}
 code{font:.88em "DejaVu Sans Mono",monospace;overflow-wrap:anywhere}
+.key{list-style:none;display:flex;flex-wrap:wrap;gap:2px 26px;margin:10px 0;padding:0;font-size:.88rem;color:var(--soft)}
+.key li{display:flex;align-items:center;gap:8px}.key svg{width:44px!important;flex:none;margin:0}
 .sign{display:none}
 svg text{font:13.5px "Source Sans 3","Noto Sans","DejaVu Sans",sans-serif;fill:var(--ink)}
 svg .q{fill:var(--soft)}svg .b{font-weight:700}svg .e{text-anchor:end}svg .c{text-anchor:middle}
