@@ -1,7 +1,8 @@
 #!/usr/bin/env python3
 """Opens report pages in headless Chromium and looks at what a reader would.
 
-Usage: report_test.py SAMPLE_PAGES_PROGRAM
+Usage: report_test.py SAMPLE_PAGES_PROGRAM STILLZONE CASES_FOLDER
+Pages of invented results of 2 to 30 zones, and those of shipped cases as the program writes them.
 Checks of every page: no script error, no request, nothing wider than the window at 400 and 1600,
 no texts of the network figure over each other, no text outside its drawing, hover shows a value,
 dragging zooms and the reset undoes it, the PDF holds every section. Size of the long history.
@@ -125,6 +126,13 @@ def main():
         subprocess.run([sys.argv[1], folder], check=True)
         pages = sorted(pathlib.Path(folder).glob("*.html"))
         check(len(pages) == 4, "sample pages", f"{len(pages)} written")
+        for case in ("pulse_feeding", "short_circuit_stagnant"):
+            out = pathlib.Path(folder) / case
+            subprocess.run([sys.argv[2], "run", f"{sys.argv[3]}/{case}.json", "--quiet", "--out", out],
+                           check=True, capture_output=True)
+            page = pathlib.Path(folder) / f"{case}.html"
+            shutil.copy(out / "report.html", page)
+            pages.append(page)
         for page in pages:
             text = page.read_text(encoding="utf-8")
             check(len(text.encode()) < 1_000_000, page.name, f"{len(text.encode())} bytes")
