@@ -45,7 +45,16 @@ core::Result<core::Done> solve_one(const Implicit& implicit, double& value,
                                             "is {3:g} at {1:g} and {4:g} at {2:g}",
                                             implicit.name, low, high, at_low, at_high));
   }
-  const double sign = at_low > 0.0 || at_high < 0.0 ? -1.0 : 1.0;  // rising once multiplied by it
+  // A root at an end of the range is that end: steps below only come near it.
+  if (!(at_low < 0.0) && !(at_low > 0.0)) {
+    value = low;
+    return core::Done{};
+  }
+  if (!(at_high < 0.0) && !(at_high > 0.0)) {
+    value = high;
+    return core::Done{};
+  }
+  const double sign = at_low > 0.0 ? -1.0 : 1.0;  // rising once multiplied by it
   double x = usable_start(implicit, value);
   double last_width = high - low;
   for (int i = 0; i < kMaxSteps; ++i) {
