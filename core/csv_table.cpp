@@ -6,6 +6,7 @@
 #include <array>
 #include <charconv>
 #include <cmath>
+#include <cstdint>
 #include <fstream>
 #include <set>
 #include <sstream>
@@ -13,11 +14,19 @@
 namespace stillzone::core {
 namespace {
 
+constexpr std::uintmax_t kLargest = std::uintmax_t{256} << 20U;  // bytes
+
 std::string_view trimmed(std::string_view text) {
   const auto first = text.find_first_not_of(" \t");
   if (first == std::string_view::npos) return {};
   return text.substr(first, text.find_last_not_of(" \t") - first + 1);
 }
+
+/// What the quotes of a table can do wrong; the first of it and its line.
+struct QuoteFault {
+  int line = 0;  ///< 0: none
+  bool open = false;
+};
 
 /// Splits a text into rows of cells; quoted cells may hold separators and line ends (RFC 4180).
 class CellScanner {
@@ -28,16 +37,29 @@ class CellScanner {
   bool next(std::vector<std::string>& cells, int& line) {
     while (at_ < text_.size()) {
       line = line_;
-      const bool comment = text_[at_] == '#';
+      if (text_[at_] == '#' && text_.substr(at_, 4) != "#N/A") {
+        while (at_ < text_.size() && text_[at_] != '\n' && text_[at_] != '\r') ++at_;
+        end_line();
+        continue;
+      }
       read_row(cells);
       const bool blank = std::all_of(cells.begin(), cells.end(),
                                      [](const std::string& cell) { return cell.empty(); });
-      if (!comment && !blank) return true;
+      if (!blank) return true;
     }
     return false;
   }
+  [[nodiscard]] const QuoteFault& quote_fault() const { return quote_fault_; }
 
  private:
+  /// Over one line end: CR LF, LF, or CR.
+  void end_line() {
+    const std::size_t start = at_;
+    if (at_ < text_.size() && text_[at_] == '\r') ++at_;
+    if (at_ < text_.size() && text_[at_] == '\n') ++at_;
+    line_ += at_ > start ? 1 : 0;
+  }
+
   void read_row(std::vector<std::string>& cells) {
     cells.clear();
     bool more = true;
@@ -47,11 +69,12 @@ class CellScanner {
       more = at_ < text_.size() && text_[at_] == separator_;
       if (more) ++at_;
     }
-    if (at_ < text_.size() && text_[at_] == '\r') ++at_;
-    if (at_ < text_.size() && text_[at_] == '\n') {
-      ++at_;
-      ++line_;
-    }
+    end_line();
+  }
+
+  [[nodiscard]] bool at_cell_end() const {
+    const char c = at_ < text_.size() ? text_[at_] : '\n';
+    return c == separator_ || c == '\n' || c == '\r';
   }
 
   std::string read_cell() {
@@ -59,20 +82,28 @@ class CellScanner {
     while (at_ < text_.size() && (text_[at_] == ' ')) ++at_;
     if (at_ >= text_.size() || text_[at_] != '"') {
       at_ = start;
-      const auto is_end = [&](char c) { return c == separator_ || c == '\n' || c == '\r'; };
-      while (at_ < text_.size() && !is_end(text_[at_])) ++at_;
+      while (!at_cell_end()) ++at_;
       return std::string(trimmed(text_.substr(start, at_ - start)));
     }
+    return read_quoted();
+  }
+
+  std::string read_quoted() {
+    const int first_line = line_;
     std::string cell;
+    bool closed = false;
     for (++at_; at_ < text_.size(); ++at_) {
       if (text_[at_] == '"') {
         ++at_;
-        if (at_ >= text_.size() || text_[at_] != '"') break;
+        closed = at_ >= text_.size() || text_[at_] != '"';
+        if (closed) break;
       }
       line_ += text_[at_] == '\n' ? 1 : 0;
       cell += text_[at_];
     }
     while (at_ < text_.size() && text_[at_] == ' ') ++at_;
+    if ((!closed || !at_cell_end()) && quote_fault_.line == 0) quote_fault_ = {first_line, !closed};
+    while (!at_cell_end()) ++at_;
     return cell;
   }
 
@@ -80,6 +111,7 @@ class CellScanner {
   char separator_;
   std::size_t at_ = 0;
   int line_ = 1;
+  QuoteFault quote_fault_;
 };
 
 /// The separator that occurs most in the first line that is no comment, outside quotes.
@@ -105,17 +137,24 @@ char find_separator(std::string_view text) {
   return ',';
 }
 
-bool looks_like_decimal_comma(std::string_view cell) {
-  const auto comma = cell.find(',');
-  if (comma == std::string_view::npos || cell.find('.') != std::string_view::npos) return false;
-  return std::all_of(cell.begin(), cell.end(), [](char c) {
-    return (c >= '0' && c <= '9') || c == ',' || c == '-' || c == '+' || c == 'e' || c == 'E';
+/// True for a number with the mark (',' or '.') as its only one.
+bool is_number_with(char mark, std::string_view cell) {
+  if (cell.find(mark) == std::string_view::npos) return false;
+  return std::all_of(cell.begin(), cell.end(), [mark](char c) {
+    return (c >= '0' && c <= '9') || c == mark || c == '-' || c == '+' || c == 'e' || c == 'E';
   });
 }
 
+/// "1.234": with decimal commas elsewhere this may be a thousand two hundred.
+bool may_be_thousands(std::string_view cell) {
+  const auto point = cell.find('.');
+  return point != std::string_view::npos && cell.size() - point == 4 && point <= 3 &&
+         is_number_with('.', cell);
+}
+
 bool means_missing(std::string_view cell) {
-  static constexpr std::array<std::string_view, 8> kWords = {"",  "NA",  "N/A", "n/a",
-                                                             "-", "nan", "NaN", "--"};
+  static constexpr std::array<std::string_view, 9> kWords = {"",    "NA",  "N/A", "n/a", "-",
+                                                             "nan", "NaN", "--",  "#N/A"};
   return std::find(kWords.begin(), kWords.end(), cell) != kWords.end();
 }
 
@@ -138,6 +177,11 @@ std::optional<CsvTable> CsvTable::parse(std::string_view text, std::string name,
            "Export it again as \"CSV UTF-8\".");
     return std::nullopt;
   }
+  if (text.find('\0') != std::string_view::npos) {
+    refuse(0, "bytes that are no text", "a table is UTF-8 text with a separator",
+           "Export the sheet as \"CSV UTF-8\".");
+    return std::nullopt;
+  }
   const char separator = find_separator(text);
   CellScanner scanner(text, separator);
   int line = 0;
@@ -153,29 +197,49 @@ std::optional<CsvTable> CsvTable::parse(std::string_view text, std::string name,
            "Rename one of the two.");
     fine = false;
   }
+  table.has_comma_.resize(table.header_.size());
+  table.has_point_.resize(table.header_.size());
+  constexpr std::size_t kMostRagged = 5;
+  std::size_t n_ragged = 0;
   std::vector<std::string> cells;
   while (scanner.next(cells, line)) {
     // Spreadsheets add empty cells at the end of rows.
     while (cells.size() > table.header_.size() && cells.back().empty()) cells.pop_back();
-    if (cells.size() > table.header_.size()) {
-      refuse(line, fmt::format("{} cells", cells.size()),
-             fmt::format("the header names {} columns", table.header_.size()).c_str(),
-             "Check for a stray separator or an unquoted text.");
+    if (cells.size() != table.header_.size()) {
+      const bool more = cells.size() > table.header_.size();
+      if (++n_ragged <= kMostRagged) {
+        refuse(line, fmt::format("{} cell{}", cells.size(), cells.size() == 1 ? "" : "s"),
+               fmt::format("the header names {} columns", table.header_.size()).c_str(),
+               more ? "Check for a stray separator or an unquoted text."
+                    : "Leave a missing cell empty, but write its separator.");
+      }
       fine = false;
     }
     cells.resize(table.header_.size());
-    for (const std::string& cell : cells) {
-      table.decimal_comma_ = table.decimal_comma_ || looks_like_decimal_comma(cell);
+    for (std::size_t i = 0; i < cells.size(); ++i) {
+      table.has_comma_[i] = table.has_comma_[i] || is_number_with(',', cells[i]);
+      table.has_point_[i] = table.has_point_[i] || is_number_with('.', cells[i]);
     }
-    table.rows_.push_back(cells);
+    table.rows_.push_back(std::move(cells));
     table.lines_.push_back(line);
+  }
+  if (n_ragged > kMostRagged) {
+    refuse(0, fmt::format("{} more rows of the wrong length", n_ragged - kMostRagged),
+           "every row has the cells the header names", "Check the separator of the export.");
+  }
+  if (const QuoteFault& quote = scanner.quote_fault(); quote.line > 0) {
+    refuse(quote.line, quote.open ? "a quote that is never closed" : "text after a closing quote",
+           "a quoted cell ends with its quote; a quote inside is doubled", "Check the quotes.");
+    fine = false;
   }
   if (fine && table.rows_.empty()) {
     refuse(0, "the table has a header and no rows", "at least one row is needed",
            "Check the export.");
     return std::nullopt;
   }
-  if (separator == ',') table.decimal_comma_ = false;
+  table.decimal_comma_ =
+      separator != ',' &&
+      std::find(table.has_comma_.begin(), table.has_comma_.end(), true) != table.has_comma_.end();
   if (!fine) return std::nullopt;
   return table;
 }
@@ -190,6 +254,13 @@ std::optional<CsvTable> CsvTable::read(const std::filesystem::path& path, FaultL
                                                                     : "there is no such file",
                 .allowed = "a table must exist and be readable",
                 .way_out = "Paths in an input file start at that file's folder."});
+    return std::nullopt;
+  }
+  if (std::filesystem::file_size(path, error) > kLargest) {
+    faults.add({.file = path.string(),
+                .found = "the file is larger than 256 MiB",
+                .allowed = "a table is at most that",
+                .way_out = "Thin it out: a row a minute is plenty."});
     return std::nullopt;
   }
   std::ostringstream content;
@@ -211,6 +282,19 @@ std::optional<double> CsvTable::number(std::size_t row, std::size_t column,
                                        FaultList& faults) const {
   std::string text(trimmed(cell(row, column)));
   if (means_missing(text)) return std::nullopt;
+  const auto refuse = [&](const char* allowed, const char* way_out) {
+    faults.add({.file = name_,
+                .pointer = "column " + header_[column],
+                .line = lines_[row],
+                .found = fmt::format("\"{}\"", cell(row, column)),
+                .allowed = allowed,
+                .way_out = way_out});
+  };
+  if (decimal_comma_ && ((has_comma_[column] && has_point_[column]) || may_be_thousands(text))) {
+    refuse("this table has decimal commas, so a point may be a decimal or a thousands mark",
+           "Export it again with one decimal mark and no thousands separators.");
+    return std::nullopt;
+  }
   if (decimal_comma_) std::replace(text.begin(), text.end(), ',', '.');
   const char* begin = text.data() + (text.front() == '+' ? 1 : 0);
   double value = 0.0;
@@ -218,12 +302,8 @@ std::optional<double> CsvTable::number(std::size_t row, std::size_t column,
   if (error == std::errc() && end == text.data() + text.size() && std::isfinite(value)) {
     return value;
   }
-  faults.add({.file = name_,
-              .pointer = "column " + header_[column],
-              .line = lines_[row],
-              .found = fmt::format("\"{}\"", cell(row, column)),
-              .allowed = "a number belongs here, or nothing where it is missing",
-              .way_out = "Put units and remarks into the header or another column."});
+  refuse("a number belongs here, or nothing where it is missing",
+         "Put units and remarks into the header or another column.");
   return std::nullopt;
 }
 

@@ -12,7 +12,8 @@ namespace stillzone::core {
 
 /// A table as text cells, with what is needed to point at a cell. Reads what spreadsheets export:
 /// byte-order mark, comma / semicolon / tab as separator, decimal commas (with semicolon or tab),
-/// quoted cells, CRLF, blank lines, lines that start with '#'.
+/// quoted cells, CRLF, blank lines, lines that start with '#'. Rows shorter or longer than the
+/// header (empty cells at the end aside) and quotes gone wrong are faults with their line.
 class CsvTable {
  public:
   [[nodiscard]] static std::optional<CsvTable> parse(std::string_view text, std::string name,
@@ -28,13 +29,16 @@ class CsvTable {
   /// Line of a row in the file, counted from 1.
   [[nodiscard]] int line(std::size_t row) const { return lines_[row]; }
   /// The cell as a number (decimal comma understood where the file uses it). Empty cells, "NA",
-  /// "n/a", "-" and "nan" are missing, not faults; anything else that is no number is a fault.
+  /// "n/a", "#N/A", "-" and "nan" are missing, not faults; anything else that is no number is a
+  /// fault, and so is a number that may be read two ways (points among decimal commas).
   [[nodiscard]] std::optional<double> number(std::size_t row, std::size_t column,
                                              FaultList& faults) const;
 
  private:
   std::string name_;
   bool decimal_comma_ = false;
+  std::vector<bool> has_comma_;  ///< per column: some number has a comma
+  std::vector<bool> has_point_;  ///< per column: some number has a point
   std::vector<std::string> header_;
   std::vector<std::vector<std::string>> rows_;
   std::vector<int> lines_;

@@ -4,7 +4,6 @@
 
 #include <cmath>
 #include <fstream>
-#include <sstream>
 #include <utility>
 #include <vector>
 
@@ -15,6 +14,24 @@ namespace stillzone::core {
 namespace {
 
 constexpr std::size_t kLargest = std::size_t{64} << 20U;  // bytes
+
+/// True when the text is UTF-8: what the library would have to replace comes back changed.
+bool is_utf8(const std::string& text) {
+  const auto shown = Json(text).dump(-1, ' ', false, Json::error_handler_t::replace);
+  return Json::parse(shown, nullptr, false) == Json(text);
+}
+
+/// At most `most` bytes and one more, so that an endless file ends too.
+bool read_bytes(const std::filesystem::path& path, std::size_t most, std::string& text) {
+  std::ifstream file(path, std::ios::binary);
+  if (!file) return false;
+  std::vector<char> block(std::size_t{1} << 16U);
+  while (text.size() <= most && file) {
+    file.read(block.data(), static_cast<std::streamsize>(block.size()));
+    text.append(block.data(), static_cast<std::size_t>(file.gcount()));
+  }
+  return !file.bad();
+}
 
 /// The parser's complaint without its own numbering: what follows "parse error at ...: ".
 std::string parser_words(const std::string& what) {
@@ -86,6 +103,14 @@ std::vector<std::string> keys_of(const Json& object) {
 std::optional<JsonDocument> JsonDocument::parse(std::string_view text, std::string name,
                                                 std::filesystem::path folder, FaultList& faults) {
   if (text.substr(0, 3) == "\xEF\xBB\xBF") text.remove_prefix(3);
+  if (text.substr(0, 2) == "\xFF\xFE" || text.substr(0, 2) == "\xFE\xFF") {
+    faults.add({.file = std::move(name),
+                .line = 1,
+                .found = "a UTF-16 file",
+                .allowed = "input files are UTF-8 text",
+                .way_out = "Save it again as UTF-8."});
+    return std::nullopt;
+  }
   JsonDocument document;
   document.name_ = std::move(name);
   document.folder_ = std::move(folder);
@@ -131,14 +156,11 @@ std::optional<JsonDocument> JsonDocument::read(const std::filesystem::path& path
     refuse("this is a folder", "an input file is needed");
     return std::nullopt;
   }
-  std::ifstream file(path, std::ios::binary);
-  std::ostringstream content;
-  if (file) content << file.rdbuf();
-  if (!file || (content.fail() && std::filesystem::file_size(path, error) > 0)) {
+  std::string text;
+  if (!read_bytes(path, kLargest, text)) {
     refuse("the file cannot be read", "an input file must be readable");
     return std::nullopt;
   }
-  const std::string text = std::move(content).str();
   if (text.size() > kLargest) {
     refuse("the file is larger than 64 MiB", "an input file is at most that");
     return std::nullopt;
@@ -172,6 +194,13 @@ void JsonDocument::set(std::string_view pointer_and_value, FaultList& faults) {
   }
   const std::string pointer(pointer_and_value.substr(0, equals));
   const std::string text(pointer_and_value.substr(equals + 1));
+  if (!is_utf8(pointer) || !is_utf8(text)) {
+    faults.add({.file = "--set",
+                .found = "bytes that are no UTF-8",
+                .allowed = "a setting is UTF-8 text",
+                .way_out = "Check the terminal's encoding."});
+    return;
+  }
   const std::vector<std::string> parts = pointer_parts(pointer);
   Json* node = &root_;
   std::string walked;

@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 #include <utility>
 
 #include "core/json_lines.hpp"
@@ -56,6 +57,19 @@ std::optional<double> plain_quantity(const ReadingContext& context, const Json& 
   return std::nullopt;
 }
 
+/// A plain quantity within limits.
+std::optional<double> fixed_quantity(const ReadingContext& context, const Json& node,
+                                     const std::string& pointer, Measure measure,
+                                     const ObjectReader::Limit& limit) {
+  const auto value = plain_quantity(context, node, pointer, measure);
+  if (!value) return std::nullopt;
+  if (!inside(*value, limit)) {
+    add_fault(context, pointer, shown(node), limit.clause, "");
+    return std::nullopt;
+  }
+  return value;
+}
+
 /// The measure of a difference: a spread of 2 degC is 2 K.
 Measure difference_measure(Measure measure) {
   return measure == Measure::temperature ? Measure::temperature_change : measure;
@@ -88,17 +102,19 @@ void read_spread(const ReadingContext& context, const Json& node, const std::str
               "Write {\"normal\": ..}, {\"lognormal\": ..}, {\"uniform\": [..]} or "
               "{\"triangular\": [..]}.");
   }
+  for (const char* kind : {"normal", "lognormal", "uniform", "triangular"}) (void)reader.raw(kind);
   Spread spread;
   if (reader.has("normal")) {
     const Measure measure = difference_measure(quantity.measure);
-    const auto deviation = reader.quantity_value("normal", measure, ObjectReader::Need::required,
-                                                 ObjectReader::positive(measure));
+    const auto deviation =
+        fixed_quantity(context, *reader.raw("normal"), reader.pointer_to("normal"), measure,
+                       ObjectReader::positive(measure));
     if (!deviation) return;
     spread = {Spread::Kind::normal, *deviation, 0.0};
   } else if (reader.has("lognormal")) {
     const auto deviation =
-        reader.quantity_value("lognormal", Measure::share, ObjectReader::Need::required,
-                              ObjectReader::positive(Measure::share));
+        fixed_quantity(context, *reader.raw("lognormal"), reader.pointer_to("lognormal"),
+                       Measure::share, ObjectReader::positive(Measure::share));
     if (!deviation) return;
     spread = {Spread::Kind::lognormal, *deviation, 0.0};
     if (!(quantity.value > 0.0)) {
@@ -134,7 +150,7 @@ std::optional<double> free_quantity(const ReadingContext& context, const Json& n
                  "Write {\"value\": .., \"fit\": [.., ..]}.");
   }
   const auto value = written != nullptr
-                         ? read_quantity(context, *written, pointer + "/value", measure, limit)
+                         ? fixed_quantity(context, *written, pointer + "/value", measure, limit)
                          : std::nullopt;
   if (value) quantity.value = *value;
   if (const Json* fit = reader.raw("fit")) {
@@ -178,13 +194,7 @@ std::optional<double> read_quantity(const ReadingContext& context, const Json& n
                                     const std::string& pointer, Measure measure,
                                     const ObjectReader::Limit& limit) {
   if (node.is_object()) return free_quantity(context, node, pointer, measure, limit);
-  const auto value = plain_quantity(context, node, pointer, measure);
-  if (!value) return std::nullopt;
-  if (!inside(*value, limit)) {
-    add_fault(context, pointer, shown(node), limit.clause, "");
-    return std::nullopt;
-  }
-  return value;
+  return fixed_quantity(context, node, pointer, measure, limit);
 }
 
 ObjectReader::ObjectReader(const ReadingContext& context, const Json& node, std::string pointer)
@@ -271,7 +281,10 @@ std::optional<double> ObjectReader::number(std::string_view key, Need need) {
 std::optional<long long> ObjectReader::integer(std::string_view key, Need need) {
   const Json* node = wanted(*this, key, need, "a whole number");
   if (node == nullptr) return std::nullopt;
-  if (!node->is_number_integer()) {
+  const bool too_large = node->is_number_unsigned() &&
+                         node->get<unsigned long long>() >
+                             static_cast<unsigned long long>(std::numeric_limits<long long>::max());
+  if (!node->is_number_integer() || too_large) {
     fault(key, kind_of(*node), "a whole number belongs here", "Write it without quotes and point.");
     return std::nullopt;
   }

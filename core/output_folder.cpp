@@ -1,11 +1,15 @@
 #include "core/output_folder.hpp"
 
+#include <fcntl.h>
 #include <fmt/format.h>
 #include <unistd.h>
 
+#include <cstdio>
 #include <fstream>
 #include <system_error>
 #include <utility>
+
+#include "core/require.hpp"
 
 namespace stillzone::core {
 namespace {
@@ -16,6 +20,20 @@ constexpr std::string_view kMarker = ".stillzone";
 Failure cannot(const std::string& what, const fs::path& path, const std::error_code& error) {
   return {.reason = fmt::format("{} {}: {}", what, path.string(), error.message()),
           .try_this = "Give another folder with --out, or check its permissions and free space."};
+}
+
+Failure not_ours(const fs::path& target) {
+  return {.reason = fmt::format("{} exists and was not written by stillzone", target.string()),
+          .try_this = "Give another folder with --out, or move that one away."};
+}
+
+/// Swaps two folders in one step, where system and file system can.
+bool exchanged(const fs::path& a, const fs::path& b) {
+#ifdef RENAME_EXCHANGE
+  return ::renameat2(AT_FDCWD, a.c_str(), AT_FDCWD, b.c_str(), RENAME_EXCHANGE) == 0;
+#else
+  return false;
+#endif
 }
 
 bool is_ours(const fs::path& folder) {
@@ -30,9 +48,7 @@ Result<OutputFolder> OutputFolder::create(const fs::path& target) {
   fs::path whole = fs::absolute(target, error).lexically_normal();
   if (whole.filename().empty()) whole = whole.parent_path();
   if (fs::exists(whole, error) && (!fs::is_directory(whole, error) || !is_ours(whole))) {
-    return Failure{
-        .reason = fmt::format("{} exists and was not written by stillzone", target.string()),
-        .try_this = "Give another folder with --out, or move that one away."};
+    return not_ours(target);
   }
   const fs::path parent = whole.parent_path();
   if (!fs::is_directory(parent, error)) {
@@ -77,19 +93,29 @@ Result<Done> OutputFolder::write(std::string_view file, std::string_view content
 }
 
 Result<Done> OutputFolder::commit() {
+  SZ_REQUIRE(!working_.empty(), "{} is committed already", target_.string());
   std::error_code error;
-  const fs::path old = working_.string() + ".old";
-  if (fs::exists(target_, error)) {
-    fs::rename(target_, old, error);
-    if (error) return cannot("cannot replace", target_, error);
+  if (!fs::exists(target_, error)) {
+    fs::rename(working_, target_, error);
+    if (error) return cannot("cannot put in place", target_, error);
+  } else {
+    // It may have come since create().
+    if (!fs::is_directory(target_, error) || !is_ours(target_)) return not_ours(target_);
+    if (!exchanged(working_, target_)) {
+      const fs::path old = working_.string() + ".old";
+      fs::remove_all(old, error);
+      fs::rename(target_, old, error);
+      if (error) return cannot("cannot replace", target_, error);
+      fs::rename(working_, target_, error);
+      if (error) {
+        std::error_code undo;
+        fs::rename(old, target_, undo);
+        return cannot("cannot put in place", target_, error);
+      }
+      working_ = old;
+    }
+    fs::remove_all(working_, error);  // the old content
   }
-  fs::rename(working_, target_, error);
-  if (error) {
-    std::error_code undo;
-    fs::rename(old, target_, undo);
-    return cannot("cannot put in place", target_, error);
-  }
-  fs::remove_all(old, error);
   working_.clear();
   return Done{};
 }

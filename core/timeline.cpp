@@ -15,13 +15,17 @@ namespace stillzone::core {
 namespace {
 
 constexpr double kNever = std::numeric_limits<double>::infinity();
+/// Limits of written schedules [d]: keep k every exact enough, and k countable.
+constexpr double kFarthest = 1e6;
+constexpr double kShortest = 0.999 / 86400.0;
 
 /// Number of the period that t lies in, exact in the sense that start(k) <= t < start(k + 1) holds
 /// with start(k) computed as first + k every, the way switch times are.
 double period_number(const Timeline::Periodic& periodic, double t) {
   double k = std::floor((t - periodic.first_on) / periodic.every);
-  while (periodic.first_on + (k + 1.0) * periodic.every <= t) k += 1.0;
-  while (periodic.first_on + k * periodic.every > t) k -= 1.0;
+  // Rounding of the division is off by one at most (two turns leave room).
+  for (int i = 0; i < 2 && periodic.first_on + (k + 1.0) * periodic.every <= t; ++i) k += 1.0;
+  for (int i = 0; i < 2 && periodic.first_on + k * periodic.every > t; ++i) k -= 1.0;
   return k;
 }
 
@@ -183,6 +187,18 @@ std::optional<Timeline::Periodic> read_periodic(ObjectReader& reader) {
   const auto on_for = reader.quantity<Measure::duration>("on_for", Need::required, limit);
   const auto first_on = reader.quantity<Measure::duration>("first_on", Need::optional, {});
   if (!every || !on_for) return std::nullopt;
+  if (first_on && std::abs(first_on->value()) > kFarthest) {
+    reader.fault("first_on", fmt::format("{:g} d", first_on->value()),
+                 fmt::format("\"first_on\" is within {:g} d of the start", kFarthest),
+                 "Give the first switch after the start of the run.");
+    return std::nullopt;
+  }
+  if (every->value() < kShortest || on_for->value() < kShortest) {
+    const char* key = on_for->value() < kShortest ? "on_for" : "every";
+    reader.fault(key, fmt::format("{:g} s", 86400.0 * std::min(*every, *on_for).value()),
+                 "a schedule is on for 1 s at least", "Give the mean flow instead of the pulses.");
+    return std::nullopt;
+  }
   if (*on_for > *every) {
     reader.fault("on_for", fmt::format("{:g} d on", on_for->value()),
                  fmt::format("\"on_for\" is at most \"every\" ({:g} d)", every->value()),

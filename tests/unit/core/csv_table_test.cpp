@@ -2,6 +2,9 @@
 
 #include <gtest/gtest.h>
 
+#include <algorithm>
+#include <chrono>
+
 namespace stillzone::core {
 namespace {
 
@@ -77,6 +80,97 @@ TEST(CsvTable, FaultsNameLineAndColumn) {
                       "a"),
             "t.csv (line 1): a UTF-16 file; tables are read as UTF-8 text. Export it again as "
             "\"CSV UTF-8\".\n");
+}
+
+TEST(CsvTable, RaggedRowsAreFaultsAndOnlyTheFirstAreListed) {
+  EXPECT_EQ(faults_of("a,b,c\n1,2\n"),
+            "t.csv (line 2): 2 cells; the header names 3 columns. Leave a missing cell empty, but "
+            "write its separator.\n");
+  std::string text = "a,b\n";
+  for (int i = 0; i < 1000; ++i) text += "1\n";
+  const std::string faults = faults_of(text);
+  EXPECT_EQ(std::count(faults.begin(), faults.end(), '\n'), 6);
+  EXPECT_NE(faults.find("t.csv: 995 more rows of the wrong length; every row has the cells the "
+                        "header names. Check the separator of the export.\n"),
+            std::string::npos);
+  EXPECT_EQ(table("a,b\n1,2,,\n").n_rows(), 1U);  // empty cells a spreadsheet adds
+}
+
+TEST(CsvTable, QuotesGoneWrongAreFaults) {
+  EXPECT_EQ(faults_of("a,b\n1,2\n\"3,4\n5,6\n"),
+            "t.csv (line 3): 1 cell; the header names 2 columns. Leave a missing cell empty, but "
+            "write its separator.\n"
+            "t.csv (line 3): a quote that is never closed; a quoted cell ends with its quote; a "
+            "quote inside is doubled. Check the quotes.\n");
+  EXPECT_EQ(
+      faults_of("a,b\n\"x\"y,2\n"),
+      "t.csv (line 2): text after a closing quote; a quoted cell ends with its quote; a quote "
+      "inside is doubled. Check the quotes.\n");
+}
+
+TEST(CsvTable, CommentsMayHoldAnything) {
+  const CsvTable t = table("# it's, \"odd\n#;;;\na,b\n1,2\n# \"\n3,4\n");
+  ASSERT_EQ(t.n_rows(), 2U);
+  EXPECT_EQ(t.line(1), 6);
+}
+
+TEST(CsvTable, LineEndsOfAnyKindCount) {
+  const CsvTable t = table("a,b\r1,2\r3,x\r");
+  ASSERT_EQ(t.n_rows(), 2U);
+  EXPECT_EQ(t.line(1), 3);
+}
+
+TEST(CsvTable, TwoDecimalMarksAreNotGuessed) {
+  const CsvTable t = table("a;b;c\n1,5;1,234;1.234\n2,5;12.5;2\n");
+  FaultList faults;
+  EXPECT_DOUBLE_EQ(number(t, 0, 0), 1.5);
+  EXPECT_FALSE(t.number(0, 1, faults).has_value());
+  EXPECT_FALSE(t.number(1, 1, faults).has_value());
+  EXPECT_FALSE(t.number(0, 2, faults).has_value());
+  EXPECT_EQ(faults.all().size(), 3U);
+  EXPECT_EQ(
+      faults.all().front().text(),
+      "t.csv column b (line 2): \"1,234\"; this table has decimal commas, so a point may be a "
+      "decimal or a thousands mark. Export it again with one decimal mark and no thousands "
+      "separators.");
+  EXPECT_DOUBLE_EQ(number(table("a;b\n1.234;2\n"), 0, 0), 1.234);
+  EXPECT_DOUBLE_EQ(number(table("a,b\n1.234,2\n"), 0, 0), 1.234);
+}
+
+TEST(CsvTable, BinaryFilesAreRefused) {
+  EXPECT_EQ(faults_of(std::string_view("PK\0\0,", 5)),
+            "t.csv: bytes that are no text; a table is UTF-8 text with a separator. Export the "
+            "sheet as \"CSV UTF-8\".\n");
+}
+
+TEST(CsvTable, FilesThatCannotBeReadAreFaults) {
+  FaultList faults;
+  EXPECT_FALSE(CsvTable::read("no_such.csv", faults));
+  EXPECT_FALSE(CsvTable::read("/tmp", faults));
+  EXPECT_EQ(faults.text(),
+            "no_such.csv: there is no such file; a table must exist and be readable. Paths in an "
+            "input file start at that file's folder.\n"
+            "/tmp: this is a folder; a table must exist and be readable. Paths in an input file "
+            "start at that file's folder.\n");
+}
+
+TEST(CsvTable, LargeTablesAreReadInSeconds) {
+  std::string text = "t;q;li\n";
+  while (text.size() < (std::size_t{50} << 20U)) text += "12,345678;1,7025e2;0,0123\n";
+  const auto start = std::chrono::steady_clock::now();
+  const CsvTable t = table(text);
+  double sum = 0.0;
+  for (std::size_t i = 0; i < t.n_rows(); ++i) sum += number(t, i, 1);
+  const std::chrono::duration<double> spent = std::chrono::steady_clock::now() - start;
+  EXPECT_NEAR(sum / static_cast<double>(t.n_rows()), 170.25, 1e-6);
+  RecordProperty("seconds", std::to_string(spent.count()));
+  EXPECT_LT(spent.count(), 30.0);
+}
+
+TEST(CsvNumber, ReadsBackToTheSameDouble) {
+  for (const double x : {0.1, 1.0 / 3.0, 1e300, -5e-324, 123456789.123456789}) {
+    EXPECT_DOUBLE_EQ(number(table("a\n" + csv_number(x) + "\n"), 0, 0), x);
+  }
 }
 
 TEST(CsvCell, QuotesOnlyWhereNeeded) {

@@ -2,7 +2,9 @@
 
 #include <gtest/gtest.h>
 
-#include "core/json_reader.hpp"
+#include <chrono>
+#include <filesystem>
+#include <fstream>
 
 namespace stillzone::core {
 namespace {
@@ -40,8 +42,110 @@ TEST(JsonDocument, RefusesDuplicateKeysTrailingCommasAndDeepNesting) {
   EXPECT_EQ(faults_of("  \n"),
             "c.json: the file is empty; an input file is one JSON object. `stillzone schema` shows "
             "what belongs in it.\n");
-  EXPECT_NE(faults_of("{\"a\": 1e999}").find("c.json"), std::string::npos);
   EXPECT_NE(faults_of("{\"a\" 1}").find("c.json (line 1): this is not JSON"), std::string::npos);
+}
+
+TEST(JsonDocument, NamesAllDuplicatesAtOnce) {
+  EXPECT_EQ(faults_of("{\"a\": {\"x\": 1,\n\"x\": 2},\n\"\\u0061\": 3}"),
+            "c.json /a/x (line 2): key \"x\" for the second time; each key stands once; the first "
+            "is on line 1. Take one of the two out.\n"
+            "c.json /a (line 3): key \"a\" for the second time; each key stands once; the first is "
+            "on line 1. Take one of the two out.\n");
+}
+
+TEST(JsonDocument, KeysThatDifferInAnEscapeAreTwoKeys) {
+  const auto d = document("{\"n\": 1,\n\"\\n\": 2,\n\"\\uD83D\\uDE00\": 3}");
+  EXPECT_EQ(d.root().size(), 3U);
+  EXPECT_EQ(d.line_of("/\xF0\x9F\x98\x80"), 3);
+}
+
+TEST(JsonDocument, NumbersAreFinite) {
+  for (const std::string number : {"1e999", "-1e999", "NaN", "Infinity", "-Infinity"}) {
+    EXPECT_EQ(faults_of("{\n\"a\": " + number + "}"),
+              "c.json /a (line 2): " + number +
+                  "; a number must be finite. Give a number between -1e308 and 1e308.\n");
+  }
+  EXPECT_EQ(document("{\"a\": 1e-999}").root()["a"].get<double>(), 0.0);
+}
+
+TEST(JsonDocument, ByteOrderMarksAreReadOrNamed) {
+  EXPECT_EQ(document("\xEF\xBB\xBF{\"a\": 1}").root()["a"], 1);
+  EXPECT_EQ(faults_of("\xFF\xFE{"),
+            "c.json (line 1): a UTF-16 file; input files are UTF-8 text. Save it again as "
+            "UTF-8.\n");
+}
+
+TEST(JsonDocument, WrongUtf8IsAFaultWithItsLine) {
+  EXPECT_NE(faults_of("{\n\"a\": \"\xC3(\"}").find("c.json (line 2): this is not JSON"),
+            std::string::npos);
+}
+
+TEST(JsonDocument, BrokenEndsNeverHang) {
+  const std::string whole = R"({"a": [1, "b\u0041", {"c": /* x */ -1.5e3}], // d
+    "e": true})";
+  for (std::size_t n = 1; n < whole.size(); ++n) {
+    EXPECT_NE(faults_of(whole.substr(0, n)), "") << n;
+  }
+}
+
+TEST(JsonDocument, EndlessKeysAndDeepPointersCostNoMemory) {
+  EXPECT_EQ(faults_of("{\"" + std::string(300, 'k') + "\": 1}"),
+            "c.json (line 1): a key of 300 characters; a key has at most 200. Check the quotes.\n");
+  std::string deep;
+  for (int i = 0; i < 60; ++i) deep += "{\"" + std::string(200, 'k') + "\":\n";
+  const auto d = document(deep + "[1,\n2]" + std::string(60, '}'));
+  std::string pointer;
+  for (int i = 0; i < 60; ++i) pointer += "/" + std::string(200, 'k');
+  EXPECT_EQ(d.line_of(pointer + "/1"), 4);  // of the nearest parent with at most 1000 characters
+}
+
+TEST(JsonDocument, LargeFilesTakeLinearTime) {
+  std::string text = "[";
+  for (int i = 0; i < 200000; ++i) text += "{\"flow\": \"170 m3/d\"},\n";
+  text += "0]";
+  const auto start = std::chrono::steady_clock::now();
+  const auto d = document(text);
+  const std::chrono::duration<double> spent = std::chrono::steady_clock::now() - start;
+  EXPECT_EQ(d.line_of("/199999/flow"), 200000);
+  EXPECT_LT(spent.count(), 20.0);  // [s]; a quadratic scan takes hours; 1 s here
+}
+
+TEST(JsonDocument, MissingFilesAndFoldersAreFaults) {
+  const auto text = [](const std::filesystem::path& path) {
+    FaultList faults;
+    EXPECT_FALSE(JsonDocument::read(path, faults).has_value());
+    return faults.text();
+  };
+  EXPECT_EQ(text("no_such.json"),
+            "no_such.json: there is no such file; an input file must exist. Check the name and the "
+            "folder you are in.\n");
+  EXPECT_EQ(text("/tmp"),
+            "/tmp: this is a folder; an input file is needed. Check the name and the folder you "
+            "are in.\n");
+  EXPECT_NE(text("/dev/zero").find("the file is larger than 64 MiB"), std::string::npos);
+}
+
+TEST(JsonDocument, SetUnderstandsPointerEscapesAndIndices) {
+  auto d = document(R"({"a/b": {"m~n": 1}, "list": [1, {"x": 2}]})");
+  FaultList faults;
+  d.set("/a~1b/m~0n=5", faults);
+  d.set("/list/1/x=\"7\"", faults);
+  d.set("/list/0=null", faults);
+  EXPECT_TRUE(faults.empty()) << faults.text();
+  EXPECT_EQ(d.root()["a/b"]["m~n"], 5);
+  EXPECT_EQ(d.root()["list"][1]["x"], "7");
+  EXPECT_TRUE(d.root()["list"][0].is_null());
+  EXPECT_EQ(d.line_of("/list/1/x"), 0);
+  d.set("/list/01x/y=3", faults);
+  d.set("/list/0/y=3", faults);
+  d.set("/a~1b/x=\xC3(", faults);
+  EXPECT_EQ(faults.text(),
+            "--set /list/01x/y=3: \"01x\" after \"/list\"; a list of 2 entries is counted from 0. "
+            "Give the number of an entry.\n"
+            "--set /list/0/y=3: no \"y\" in \"/list/0\"; there is nothing below a single value. "
+            "Shorten the pointer.\n"
+            "--set: bytes that are no UTF-8; a setting is UTF-8 text. Check the terminal's "
+            "encoding.\n");
 }
 
 TEST(JsonDocument, SetChangesOneValue) {
@@ -72,52 +176,6 @@ TEST(JsonDocument, SetRefusesWhatIsNotThere) {
   EXPECT_EQ(text("zones=1"),
             "--set zones=1: no \"/pointer=value\"; a setting is a JSON pointer, \"=\" and a value. "
             "Write for example --set \"/zones/core/volume=900 m3\".\n");
-}
-
-class Reading {
- public:
-  explicit Reading(const char* text) : document_(document(text)) {}
-  ObjectReader reader() { return {context_, document_.root(), ""}; }
-  FaultList faults;
-  std::vector<FreeQuantity> free_quantities;
-
- private:
-  JsonDocument document_;
-  UnitReader units_;
-  ReadingContext context_{document_, units_, faults, free_quantities};
-};
-
-TEST(ObjectReader, QuantitiesMayBeFreeOrUncertain) {
-  Reading reading(
-      R"({"v": {"value": "600 m3", "fit": ["100 m3", "1500 m3"], "spread": {"normal": "60 m3"}}})");
-  auto reader = reading.reader();
-  const auto v = reader.quantity<Measure::volume>("v", ObjectReader::Need::required,
-                                                  ObjectReader::positive(Measure::volume));
-  reader.finish();
-  EXPECT_TRUE(reading.faults.empty()) << reading.faults.text();
-  EXPECT_DOUBLE_EQ(v.value().value(), 600.0);
-  ASSERT_EQ(reading.free_quantities.size(), 1U);
-  EXPECT_EQ(reading.free_quantities[0].pointer, "/v");
-  EXPECT_DOUBLE_EQ(reading.free_quantities[0].fit_high.value(), 1500.0);
-  EXPECT_DOUBLE_EQ(reading.free_quantities[0].spread.value().a, 60.0);
-}
-
-TEST(ObjectReader, FaultsTeach) {
-  Reading reading(R"({"volum": 3, "flow": 170, "x": "-1 m3"})");
-  auto reader = reading.reader();
-  (void)reader.quantity<Measure::volume>("volume", ObjectReader::Need::required, {});
-  (void)reader.quantity<Measure::flow>("flow", ObjectReader::Need::required, {});
-  (void)reader.quantity<Measure::volume>("x", ObjectReader::Need::required,
-                                         ObjectReader::positive(Measure::volume));
-  reader.finish();
-  EXPECT_EQ(reading.faults.text(),
-            "c.json (line 1): no \"volume\"; \"volume\" is needed: a volume, like \"1 m3\". Add "
-            "\"volume\".\n"
-            "c.json /flow (line 1): 170; a flow needs its unit. Write \"170 m3/d\" (or m3/d, m3/h, "
-            "L/s, gpm, MGD).\n"
-            "c.json /x (line 1): \"-1 m3\"; a volume must be > 0 here.\n"
-            "c.json /volum (line 1): key \"volum\"; this key is not known here. Did you mean "
-            "\"volume\"?\n");
 }
 
 }  // namespace

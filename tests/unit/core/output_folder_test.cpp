@@ -70,5 +70,46 @@ TEST_F(OutputFolders, NeedAnExistingParent) {
   EXPECT_NE(folder.failure().text().find("does not exist"), std::string::npos);
 }
 
+TEST_F(OutputFolders, WhatComesMeanwhileIsNotReplaced) {
+  auto folder = OutputFolder::create(base_ / "a.out");
+  ASSERT_TRUE(folder.ok());
+  fs::create_directory(base_ / "a.out");
+  std::ofstream(base_ / "a.out/data") << "1";
+  const auto done = folder.value().commit();
+  ASSERT_FALSE(done.ok());
+  EXPECT_NE(done.failure().text().find("exists and was not written by stillzone"),
+            std::string::npos);
+  EXPECT_EQ(content("a.out/data"), "1");
+}
+
+TEST_F(OutputFolders, AFileInTheWayIsNotReplaced) {
+  std::ofstream(base_ / "a.out") << "1";
+  EXPECT_FALSE(OutputFolder::create(base_ / "a.out").ok());
+  EXPECT_EQ(content("a.out"), "1");
+}
+
+TEST_F(OutputFolders, AnEmptyFolderMayBeFilled) {
+  fs::create_directory(base_ / "a.out");
+  auto folder = OutputFolder::create(base_ / "a.out/");
+  ASSERT_TRUE(folder.ok());
+  ASSERT_TRUE(folder.value().write("x", "1").ok());
+  ASSERT_TRUE(folder.value().commit().ok());
+  EXPECT_EQ(content("a.out/x"), "1");
+}
+
+TEST_F(OutputFolders, AParentThatTakesNoFolderIsAFailureWithANextStep) {
+  const auto folder = OutputFolder::create("/proc/a.out");
+  ASSERT_FALSE(folder.ok());
+  EXPECT_NE(folder.failure().text().find("cannot create /proc/"), std::string::npos);
+  EXPECT_NE(folder.failure().text().find("Give another folder with --out"), std::string::npos);
+}
+
+TEST_F(OutputFolders, CannotBeCommittedTwice) {
+  auto folder = OutputFolder::create(base_ / "a.out");
+  ASSERT_TRUE(folder.ok());
+  ASSERT_TRUE(folder.value().commit().ok());
+  EXPECT_THROW((void)folder.value().commit(), std::exception);
+}
+
 }  // namespace
 }  // namespace stillzone::core

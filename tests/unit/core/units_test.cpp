@@ -2,6 +2,10 @@
 
 #include <gtest/gtest.h>
 
+#include <cstdlib>
+#include <stdexcept>
+#include <string>
+
 namespace stillzone::core {
 namespace {
 
@@ -89,6 +93,108 @@ TEST_F(Units, MessagesSayWhatIsWrong) {
   EXPECT_EQ(problem("1e999 m3", Measure::volume), "the number of a volume must be finite");
   EXPECT_EQ(problem("nan m3", Measure::volume), "the number of a volume must be finite");
   EXPECT_EQ(problem("", Measure::volume), "a volume starts with a number");
+}
+
+TEST_F(Units, ValuesOutsideWhatNaturePermitsAreRefused) {
+  EXPECT_EQ(problem("-300 degC", Measure::temperature),
+            "this is below absolute zero (-273.15 degC)");
+  EXPECT_EQ(problem("1e308 MG", Measure::volume), "the number of a volume must be finite");
+  EXPECT_DOUBLE_EQ(value("-2 degC", Measure::temperature_change), -2.0);
+}
+
+TEST_F(Units, NoBreakSpacesAreBlanks) {
+  EXPECT_DOUBLE_EQ(value("170\u00A0m3/d", Measure::flow), 170.0);
+  EXPECT_DOUBLE_EQ(value("170\u202Fm3/d", Measure::flow), 170.0);
+  EXPECT_EQ(problem("1\u00A0200 m3", Measure::volume), "numbers have no blanks inside");
+}
+
+TEST_F(Units, ANormalCubicMetreIsNoNewtonMetre) {
+  EXPECT_DOUBLE_EQ(value("5 Nm3/d", Measure::flow), 5.0);
+  EXPECT_DOUBLE_EQ(value("5 Nm^3", Measure::volume), 5.0);
+  EXPECT_DOUBLE_EQ(value("5 Nm³", Measure::volume), 5.0);
+  EXPECT_EQ(problem("5 Nm", Measure::length), "unit \"Nm\" is not known");
+}
+
+TEST_F(Units, RadiansAreNoRevolutions) {
+  EXPECT_EQ(problem("3 rad/s", Measure::rotation),
+            "\"rad/s\" counts radians, and revolutions are needed");
+}
+
+TEST_F(Units, ShiftedAndLogarithmicUnitsAreRefused) {
+  EXPECT_EQ(problem("35 K @ 273.15", Measure::temperature), "unit \"K @ 273.15\" is not known");
+  EXPECT_EQ(problem("3 lg(re 1 K)", Measure::temperature), "unit \"lg(re 1 K)\" is not known");
+  EXPECT_EQ(problem("3 degC", Measure::duration),
+            "\"degC\" measures a temperature, and a duration is needed");
+}
+
+TEST_F(Units, EndlessUnitsAreRefusedAtOnce) {
+  const std::string blanks = "1 m3/" + std::string(200000, ' ') + "d";
+  EXPECT_EQ(problem(blanks.c_str(), Measure::flow), "a unit of 200004 characters");
+  const std::string brackets = "1 " + std::string(200000, '(');
+  EXPECT_EQ(problem(brackets.c_str(), Measure::flow), "a unit of 200000 characters");
+  std::string why;
+  EXPECT_FALSE(units_.scale_between(std::string(500, '('), "1/d", why));
+  EXPECT_EQ(why, "a unit of 500 characters");
+}
+
+TEST_F(Units, WayOutShowsTheMeasuresUnits) {
+  EXPECT_EQ(units_.read("170", Measure::flow).way_out,
+            "Write it as a number and one of m3/d, m3/h, L/s, gpm, MGD.");
+  EXPECT_EQ(units_.read("1,200 m3", Measure::volume).way_out,
+            "Write 1200.5, not 1,200.5 or 1.200,5.");
+}
+
+TEST_F(Units, EveryMeasureReadsItsInternalUnitAsOne) {
+  for (int i = 0; i < static_cast<int>(Measure::share); ++i) {
+    const auto measure = static_cast<Measure>(i);
+    const std::string text = "1 " + std::string(internal_unit(measure));
+    EXPECT_NEAR(value(text.c_str(), measure), 1.0, 1e-14) << text;
+  }
+}
+
+TEST_F(Units, EveryExampleUnitIsRead) {
+  for (int i = 0; i < static_cast<int>(Measure::share); ++i) {
+    const auto measure = static_cast<Measure>(i);
+    std::string examples(example_units(measure));
+    while (!examples.empty()) {
+      const auto comma = examples.find(", ");
+      const std::string text = "1 " + examples.substr(0, comma);
+      EXPECT_TRUE(units_.read(text, measure).value.has_value()) << text;
+      examples = comma == std::string::npos ? "" : examples.substr(comma + 2);
+    }
+  }
+}
+
+TEST(UnitDatabase, MissingIsSaidWithThePlaceLookedAt) {
+  ASSERT_EQ(setenv("UDUNITS2_XML_PATH", "/no/such/udunits2.xml", 1), 0);
+  std::string message;
+  try {
+    const UnitReader reader;
+  } catch (const std::runtime_error& error) {
+    message = error.what();
+  }
+  unsetenv("UDUNITS2_XML_PATH");
+  EXPECT_EQ(message,
+            "the UDUNITS-2 unit database is missing or damaged (looked for "
+            "/no/such/udunits2.xml). Install the package libudunits2-data, or set "
+            "UDUNITS2_XML_PATH to udunits2.xml.");
+}
+
+TEST_F(Units, ModelUnitsOfTheLiteratureConvert) {
+  const auto scale = [&](const char* from, const char* to) {
+    std::string why;
+    const auto found = units_.scale_between(from, to, why);
+    EXPECT_TRUE(found) << from << ": " << why;
+    return found.value_or(UnitReader::Scale{-1.0, 0.0});
+  };
+  EXPECT_NEAR(scale("mmol/L", "kmol/m3").scale, 1e-3, 1e-17);
+  EXPECT_NEAR(scale("meq/L", "kmol/m3").scale, 1e-3, 1e-17);
+  EXPECT_NEAR(scale("kgCOD/m3", "kg COD/m3").scale, 1.0, 1e-15);
+  EXPECT_NEAR(scale("kg COD/m3/d", "g COD/L/h").scale, 1.0 / 24.0, 1e-15);
+  EXPECT_NEAR(scale("m3/kg COD/d", "m3/kg COD/h").scale, 1.0 / 24.0, 1e-15);
+  EXPECT_NEAR(scale("mbar", "bar").scale, 1e-3, 1e-17);
+  EXPECT_NEAR(scale("kJ/mol", "J/mol").scale, 1e3, 1e-9);
+  EXPECT_NEAR(scale("degC", "K").offset, 273.15, 1e-12);  // "degC" is no gram of carbon
 }
 
 TEST_F(Units, ParameterUnitsConvertWhenTheyCountTheSame) {
