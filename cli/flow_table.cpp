@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include "cli/stagnation.hpp"
 #include "cli/text_table.hpp"
 
 namespace stillzone::cli {
@@ -68,14 +69,12 @@ std::string NetworkView::stream_table() const {
 }
 
 std::vector<std::string> NetworkView::remarks() const {
-  // Both limits: common practice, no source.
-  constexpr double kSlow = 5.0;     // turnover time in retention times
-  constexpr double kBypass = 1e-9;  // of the feed
+  constexpr double kBypass = 1e-9;  // of the feed: less is rounding
   std::vector<std::string> remarks;
   const double retention = total_feed_ > 0.0 ? total_volume_ / total_feed_ : 0.0;
   for (std::size_t z = 0; z < case_.zones.size(); ++z) {
     const double turnover = inflow_[z] > 0.0 ? case_.zones[z].volume.value() / inflow_[z] : 0.0;
-    if (turnover > kSlow * retention && retention > 0.0) {
+    if (turnover > kStagnantTurnovers * retention && retention > 0.0) {
       remarks.push_back(
           fmt::format("zone {} is turned over once in {} d, {:.1f} times V/Q: it "
                       "stands still",

@@ -127,7 +127,8 @@ std::string run_tables(const network::Case& the_case, const network::RunResult& 
                       result.unknowns, counts.steps, counts.rate_calls, counts.jacobian_calls,
                       result.seconds);
   if (!counts.method.empty()) {
-    text += fmt::format("{}{}\n", counts.method, counts.reason.empty() ? "" : ": " + counts.reason);
+    const bool told_below = result.solution_note.rfind(counts.reason, 0) == 0;
+    text += fmt::format("{}{}\n", counts.method, told_below ? "" : ": " + counts.reason);
   }
   if (!result.solution_note.empty()) text += result.solution_note + "\n";
   for (const std::string& warning : result.warnings) text += "warning: " + warning + "\n";

@@ -1,6 +1,7 @@
 #include "cli/commands/run_command.hpp"
 
 #include <fmt/format.h>
+#include <spdlog/spdlog.h>
 
 #include <ctime>
 #include <filesystem>
@@ -8,6 +9,7 @@
 #include "cli/loaded_case.hpp"
 #include "cli/progress.hpp"
 #include "cli/report/run_report.hpp"
+#include "cli/run_log.hpp"
 #include "cli/run_tables.hpp"
 #include "cli/series_csv.hpp"
 #include "cli/series_netcdf.hpp"
@@ -63,8 +65,11 @@ int fail(const core::Failure& failure, const CommandLine& line, Console& console
 }
 
 int run_case(const CommandLine& line, Console& console) {
+  const auto log = make_log(line, console);
   const auto loaded = load_case(line, console);
   if (!loaded) return kWrongInput;
+  log->debug("{}: {} zones, {} flows, kinetics {}", line.input, loaded->the_case.zones.size(),
+             loaded->the_case.flows.size(), loaded->the_case.kinetics.name);
   // The folder is opened before the computation: a wrong --out is told at once.
   auto folder = core::OutputFolder::create(output_path(line));
   if (!folder) return fail(folder.failure(), line, console, kWrongInput);
@@ -75,6 +80,9 @@ int run_case(const CommandLine& line, Console& console) {
     return network::run_case(loaded->the_case, loaded->balance, hooks);
   }();
   if (!result) return fail(result.failure(), line, console, kNoSolution);
+  log->debug("{} steps, {} Jacobians, {:.3g} s; {}", result.value().solver.steps,
+             result.value().solver.jacobian_calls, result.value().seconds,
+             result.value().solution_note);
   const std::string summary = run_summary(result.value(), loaded->the_case.title).dump(2) + "\n";
   const auto written = write_files(line, *loaded, result.value(), summary, folder.value());
   if (!written) return fail(written.failure(), line, console, kWrongInput);

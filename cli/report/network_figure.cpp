@@ -388,7 +388,7 @@ class Drawing {
     rows.emplace_back(
         "<rect class=\"tank\" x=\"2\" y=\"-13\" width=\"30\" height=\"18\" rx=\"4\"/><rect "
         "fill=\"url(#hatch)\" x=\"2\" y=\"-13\" width=\"30\" height=\"18\" rx=\"4\"/>",
-        "stagnant: turnover time over 5 times the HRT");
+        "stagnant: turned over more slowly than V/Q");
     rows.emplace_back("<path class=\"pipe short\" stroke-width=\"3\" d=\"M2-5h38\"/>",
                       "short circuit: from feed to outlet at once");
     std::string html = "<ul class=key>";

@@ -264,9 +264,9 @@ std::string network_section(const RunReportInput& input, const NetworkFacts& fac
     const std::string name = html_escaped(input.the_case.zones[z].name);
     if (zone.stagnant) {
       findings += fmt::format(
-          "<li><b>{}</b> is stagnant: it turns over once in {} d, more than {} times the nominal "
-          "retention time; it holds {} % of the volume.</li>",
-          name, brief(zone.turnover, 3), kStagnantTurnovers,
+          "<li><b>{}</b> is stagnant: all that flows in turns it over once in {} d, more slowly "
+          "than the feed the whole tank ({} d); it holds {} % of the volume.</li>",
+          name, brief(zone.turnover, 3), brief(facts.retention, 3),
           brief(100.0 * input.the_case.zones[z].volume.value() / facts.volume, 3));
     }
     if (zone.short_circuit) {

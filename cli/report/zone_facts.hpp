@@ -6,12 +6,9 @@
 
 #include "cli/report/network_figure.hpp"
 #include "cli/report/run_report.hpp"
+#include "cli/stagnation.hpp"
 
 namespace stillzone::cli {
-
-/// A zone counts as stagnant when its turnover time is over this many times the nominal hydraulic
-/// retention time. Common practice, no source; the report states it.
-inline constexpr double kStagnantTurnovers = 5.0;
 
 /// What the flows alone say of each zone.
 struct ZoneFacts {

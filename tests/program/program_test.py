@@ -150,6 +150,16 @@ class Settings(InFolder):
         self.assertIn('Did you mean "zones"?', done.stderr)
 
 
+class Log(InFolder):
+    def test_debug_lines_go_to_stderr_and_quiet_silences_them(self):
+        case = CASES / "ideal_tank.json"
+        done = run("run", case, "--json", "--log-level", "debug", cwd=self.folder)
+        self.assertIn("debug: ", done.stderr)
+        json.loads(done.stdout)
+        done = run("run", case, "--json", "--log-level", "debug", "--quiet", cwd=self.folder)
+        self.assertEqual(done.stderr, "")
+
+
 class Summary(InFolder):
     def test_has_the_keys_of_the_contract(self):
         done = run("run", CASES / "three_zone_example.json", "--json", "--quiet",
