@@ -108,7 +108,8 @@ constexpr const char* kIonModel = R"model({
 class IonModel : public ::testing::Test {
  protected:
   void SetUp() override {
-    path_ = std::filesystem::temp_directory_path() / "stillzone_ions.json";
+    const auto* test = ::testing::UnitTest::GetInstance()->current_test_info();
+    path_ = std::filesystem::temp_directory_path() / (std::string("stillzone-") + test->name());
     std::ofstream(path_) << kIonModel;
   }
   void TearDown() override { std::filesystem::remove(path_); }

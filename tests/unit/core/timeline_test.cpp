@@ -179,7 +179,10 @@ TEST(Timeline, FeedAndMixingOfAMonthSwitch1469TimesBesidesTheStart) {
 }
 
 std::optional<Timeline> record(const char* csv, const char* reading, std::string& faults_text) {
-  const std::filesystem::path folder = std::filesystem::temp_directory_path() / "stillzone-record";
+  // Tests run side by side: each has a folder of its own.
+  const auto* test = testing::UnitTest::GetInstance()->current_test_info();
+  const std::filesystem::path folder =
+      std::filesystem::temp_directory_path() / (std::string("stillzone-record-") + test->name());
   std::filesystem::create_directories(folder);
   std::ofstream(folder / "flow.csv") << csv;
   FaultList faults;
