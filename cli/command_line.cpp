@@ -75,6 +75,10 @@ std::string parse_complaint(const CLI::App& app, const Command& command,
                          command.name, first, command.input_name);
     }
     const std::string flag = first.substr(0, first.find('='));
+    if (flag == "--samples" || flag == "--seed") {
+      return fmt::format("stillzone {}: flag \"{}\" is not in this version yet.", command.name,
+                         flag);
+    }
     return fmt::format("stillzone {}: flag \"{}\" is not known here. {}", command.name, flag,
                        core::name_hint(flag, flags_of(app)));
   }
@@ -148,6 +152,18 @@ Parsed parse_command_line(const std::vector<std::string>& arguments,
     return {};
   } catch (const CLI::ParseError& error) {
     return complain(console, parse_complaint(sub, command, error), name);
+  }
+  for (const std::string& setting : line.settings) {
+    if (setting.rfind('/', 0) == 0 && setting.find('=') != std::string::npos) continue;
+    return complain(
+        console,
+        fmt::format("stillzone {}: --set \"{}\" is not \"/json/pointer=value\". Write for "
+                    "example --set \"/zones/core/volume=900 m3\".",
+                    name, setting),
+        name);
+  }
+  if (line.out && line.out->empty()) {
+    return complain(console, fmt::format("stillzone {}: --out names no folder.", name), name);
   }
   return {.line = std::move(line), .command = &command, .exit_code = kDone};
 }

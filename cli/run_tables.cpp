@@ -90,6 +90,20 @@ std::string headspace_table(const network::RunResult& result) {
   return table.text();
 }
 
+std::string mean_gas_table(const network::RunResult& result) {
+  TextTable table;
+  table.column("headspace", TextTable::Align::left);
+  table.column("gas, wet [m3/d]");
+  table.column("gas, dry normal [m3/d]");
+  table.column("methane, normal [m3/d]");
+  for (const auto& space : result.headspaces) {
+    table.row({space.name, short_number(space.mean_gas_flow),
+               short_number(space.mean_gas_flow_normal_dry),
+               short_number(space.mean_methane_flow_normal)});
+  }
+  return table.text();
+}
+
 std::string balance_table(const network::RunResult& result) {
   TextTable table;
   table.column("balance", TextTable::Align::left);
@@ -114,11 +128,19 @@ std::string run_tables(const network::Case& the_case, const network::RunResult& 
                                  result.kind == "steady"
                                      ? std::string()
                                      : fmt::format(", state at {} d", short_number(result.until)));
-  text += "Zones\n" + place_table(the_case, result.zones, "zone");
+  const bool steady = result.kind == "steady";
+  const std::string when = steady ? "" : fmt::format(" at {} d", short_number(result.until));
+  text += "Zones" + when + "\n" + place_table(the_case, result.zones, "zone");
   std::vector<PlaceState> outlets;
   for (const auto& outlet : result.outlets) outlets.push_back(outlet.state);
-  text += "\nOutlets\n" + place_table(the_case, outlets, "outlet");
-  if (!result.headspaces.empty()) text += "\nGas\n" + headspace_table(result);
+  text += "\nOutlets" + when + "\n" + place_table(the_case, outlets, "outlet");
+  if (!result.headspaces.empty()) {
+    text += "\nGas" + when + "\n" + headspace_table(result);
+    if (!steady) {
+      text += fmt::format("\nGas, mean over the {}\n", result.kind == "periodic" ? "cycle" : "run");
+      text += mean_gas_table(result);
+    }
+  }
   text += fmt::format("\nBalances{}\n",
                       result.kind == "steady" ? " (per day)" : " (over the whole run)");
   text += balance_table(result);

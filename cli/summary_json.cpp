@@ -1,5 +1,7 @@
 #include "cli/summary_json.hpp"
 
+#include "cli/series_means.hpp"
+
 namespace stillzone::cli {
 namespace {
 
@@ -8,6 +10,18 @@ using core::Json;
 Json values(const std::vector<network::NamedValue>& named) {
   Json object = Json::object();
   for (const network::NamedValue& value : named) object[value.name] = value.value;
+  return object;
+}
+
+/// Time means of a place's states, from the recorded history; empty for a steady state.
+Json means(const network::Series& series, const network::PlaceState& place) {
+  Json object = Json::object();
+  for (const auto* list : {&place.state, &place.derived}) {
+    for (const network::NamedValue& value : *list) {
+      const auto mean = series_mean(series, place.place, value.name);
+      if (mean) object[value.name] = *mean;
+    }
+  }
   return object;
 }
 
@@ -31,7 +45,11 @@ Json headspace(const network::HeadspaceResult& result) {
           {"gas_flow_normal_dry_m3_d", result.gas_flow_normal_dry},
           {"methane_flow_normal_m3_d", result.methane_flow_normal},
           {"methane_share_dry", result.methane_share_dry},
-          {"pipe_open", result.pipe_open}};
+          {"pipe_open", result.pipe_open},
+          {"means",
+           {{"gas_flow_m3_d", result.mean_gas_flow},
+            {"gas_flow_normal_dry_m3_d", result.mean_gas_flow_normal_dry},
+            {"methane_flow_normal_m3_d", result.mean_methane_flow_normal}}}};
 }
 
 Json balance_terms(const network::Balance& balance) {
@@ -70,10 +88,17 @@ Json run_summary(const network::RunResult& result, const std::string& title) {
   summary["title"] = title;
   summary["kind"] = result.kind;
   summary["time_d"] = result.until;
+  summary["states_are"] = result.kind == "steady" ? "the steady state"
+                          : result.kind == "periodic"
+                              ? "those at the start of a cycle; \"means\" are over the cycle"
+                              : "those at time_d; \"means\" and flows are over the run";
   summary["zones"] = Json::object();
   for (const network::PlaceState& zone : result.zones) {
     summary["zones"][zone.place] = {{"state", values(zone.state)},
                                     {"derived", values(zone.derived)}};
+    if (!result.series.time.empty()) {
+      summary["zones"][zone.place]["means"] = means(result.series, zone);
+    }
   }
   summary["outlets"] = Json::object();
   for (const auto& result_of : result.outlets)

@@ -159,7 +159,9 @@ std::optional<double> free_quantity(const ReadingContext& context, const Json& n
       quantity.fit_low = range->first;
       quantity.fit_high = range->second;
       if (value && (*value < range->first || *value > range->second)) {
-        reader.fault("fit", "a value outside these bounds", "a fit starts inside its bounds",
+        reader.fault("fit", fmt::format("the value {:g} {}", *value, internal_unit(measure)),
+                     fmt::format("a fit starts inside its bounds, here {:g} to {:g} {}",
+                                 range->first, range->second, internal_unit(measure)),
                      "Widen the bounds or move the value.");
       }
       for (const double end : {range->first, range->second}) {

@@ -37,6 +37,8 @@ struct ReadingContext {
   const UnitReader& units;
   FaultList& faults;
   std::vector<FreeQuantity>& free_quantities;
+  /// What a reader mended or assumed, in sentences for the user; null: nobody listens.
+  std::vector<std::string>* notes = nullptr;
 };
 
 /// Walks one JSON object. Each getter ticks its key off; `finish()` turns every key that nobody

@@ -300,15 +300,35 @@ std::optional<Timeline> read_record(ObjectReader& reader, std::optional<Measure>
     int line;
   };
   std::vector<Row> rows;
+  std::size_t n_missing = 0;
   for (std::size_t i = 0; i < table->n_rows(); ++i) {
     const auto t = table->number(i, time->number, faults);
     const auto v = table->number(i, value->number, faults);
-    if (!t || !v) continue;
+    if (!t || !v) {
+      ++n_missing;
+      continue;
+    }
     rows.push_back({time->scale.scale * *t + time->scale.offset,
                     value->scale.scale * *v + value->scale.offset, table->line(i)});
   }
-  std::stable_sort(rows.begin(), rows.end(),
-                   [](const Row& a, const Row& b) { return a.time < b.time; });
+  const auto earlier = [](const Row& a, const Row& b) { return a.time < b.time; };
+  const auto note = [&](const std::string& text) {
+    if (reader.context().notes != nullptr) {
+      reader.context().notes->push_back(table->name() + ": " + text);
+    }
+  };
+  if (n_missing > 0) {
+    note(fmt::format("{} of {} rows have no time or no value; the row before holds on", n_missing,
+                     table->n_rows()));
+  }
+  if (!std::is_sorted(rows.begin(), rows.end(), earlier)) {
+    note("the rows are not in time order; they were sorted");
+  }
+  std::stable_sort(rows.begin(), rows.end(), earlier);
+  if (!rows.empty() && rows.front().time > 0.0) {
+    note(fmt::format("the record starts at {:g} d; its first value is taken before that too",
+                     rows.front().time));
+  }
   for (std::size_t i = 1; i < rows.size(); ++i) {
     if (rows[i].time > rows[i - 1].time) continue;
     faults.add({.file = table->name(),

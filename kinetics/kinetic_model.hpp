@@ -7,6 +7,7 @@
 #include <span>
 #include <string>
 #include <string_view>
+#include <utility>
 #include <vector>
 
 #include "core/fault.hpp"
@@ -92,8 +93,10 @@ class KineticModel {
   std::vector<Gas> gases;
   std::vector<Derived> derived;
   std::vector<Group> groups;
-  std::string vfa;                   ///< name of the derived quantity that is the VFA; may be empty
-  double gas_constant = 0.083145;    ///< [bar m3 / kmol / K]
+  std::string vfa;                 ///< name of the derived quantity that is the VFA; may be empty
+  double gas_constant = 0.083145;  ///< [bar m3 / kmol / K]
+  /// [K] Temperatures for which the model's rates hold; empty when its file does not say.
+  std::optional<std::pair<double, double>> temperature_range;
   std::vector<std::string> caveats;  ///< what the model's own file says of its limits
   std::unique_ptr<const ModelProgram> program;
 

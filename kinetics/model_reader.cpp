@@ -111,6 +111,24 @@ void ModelReader::read_header(core::ObjectReader& file) {
                     });
 }
 
+void ModelReader::read_temperature_range(core::ObjectReader& file) {
+  std::vector<double> ends;
+  file.each_element(
+      "temperature_range", Need::optional, [&](const core::Json& node, const std::string& pointer) {
+        const auto end =
+            core::read_quantity(context_, node, pointer, core::Measure::temperature, {});
+        if (end) ends.push_back(*end);
+      });
+  if (!file.has("temperature_range")) return;
+  if (ends.size() == 2 && ends[0] < ends[1]) {
+    model_.temperature_range = {ends[0], ends[1]};
+    return;
+  }
+  file.fault("temperature_range", core::shown(*file.raw("temperature_range")),
+             "a range is a list of two temperatures, the lower first",
+             "Write it like [\"30 degC\", \"40 degC\"].");
+}
+
 double ModelReader::read_gas_constant(core::ObjectReader& file) {
   const double usual = model_.gas_constant;
   const auto text = file.text("gas_constant", Need::optional);
@@ -152,6 +170,7 @@ std::optional<KineticModel> ModelReader::read(std::string name) {
   const std::size_t n_faults_before = context_.faults.all().size();
   core::ObjectReader file(context_, root_, "");
   read_header(file);
+  read_temperature_range(file);
   model_.name = std::move(name);
   model_.gas_constant = read_gas_constant(file);
   collect_sections(file);

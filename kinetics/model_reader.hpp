@@ -40,6 +40,7 @@ class ModelReader {
   Section section(core::ObjectReader& file, std::string_view key, core::ObjectReader::Need need);
   void declare_names();
   void read_header(core::ObjectReader& file);
+  void read_temperature_range(core::ObjectReader& file);
   double read_gas_constant(core::ObjectReader& file);
   void assemble_sources();
   void fault(const std::string& pointer, std::string found, std::string allowed,

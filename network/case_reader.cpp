@@ -91,6 +91,21 @@ void leave_gas_out(Case& the_case) {
                   the_case.kinetics.name));
 }
 
+/// Zones at temperatures for which the model's rates are not meant.
+void warn_of_temperatures(Case& result) {
+  const auto& range = result.kinetics.temperature_range;
+  if (!range) return;
+  for (const Zone& zone : result.zones) {
+    const double at = zone.temperature.value();
+    if (at >= range->first && at <= range->second) continue;
+    result.warnings.push_back(fmt::format(
+        "zone \"{}\" is at {:.1f} degC; the rates of model \"{}\" are meant for {:.0f} to {:.0f} "
+        "degC, and what it gives here is extrapolated",
+        zone.name, at - 273.15, result.kinetics.name, range->first - 273.15,
+        range->second - 273.15));
+  }
+}
+
 void collect_warnings(CaseReading& reading) {
   Case& the_case = reading.result;
   for (std::size_t h = 0; h < the_case.headspaces.size(); ++h) {
@@ -186,7 +201,8 @@ std::optional<Case> read_case(const core::JsonDocument& document, const core::Un
                               core::FaultList& faults) {
   const std::size_t n_faults_before = faults.all().size();
   std::vector<core::FreeQuantity> free_quantities;
-  const core::ReadingContext context{document, units, faults, free_quantities};
+  std::vector<std::string> notes;
+  const core::ReadingContext context{document, units, faults, free_quantities, &notes};
   CaseReading reading(context);
   ObjectReader root(context, document.root(), "");
   if (!document.root().is_object() || !is_a_case(reading, root)) return std::nullopt;
@@ -210,7 +226,9 @@ std::optional<Case> read_case(const core::JsonDocument& document, const core::Un
   if (faults.all().size() > n_faults_before) return std::nullopt;
   leave_gas_out(reading.result);
   collect_warnings(reading);
+  warn_of_temperatures(reading.result);
   reading.result.free_quantities = std::move(free_quantities);
+  reading.result.warnings.insert(reading.result.warnings.end(), notes.begin(), notes.end());
   return std::move(reading.result);
 }
 

@@ -59,6 +59,7 @@ DigesterSystem::DigesterSystem(const Case& the_case, const FlowBalance& balance,
   for (const Headspace& headspace : the_case.headspaces) {
     const double temperature = headspace.temperature.value();
     vapour_.push_back(model.vapour_pressure(temperature));
+    meters_.emplace_back(headspace, model, vapour_.back());
     for (const auto& gas : model.gases) {
       differential_.push_back(1);
       floors_.push_back(gas.floor);
@@ -249,13 +250,23 @@ void DigesterSystem::add_pipe_jacobian(std::span<const double> y, std::span<doub
 
 // --------------------------------------------------------------------------------- quadratures
 
+/// Where a headspace's meter stands among the quadratures.
+std::span<double> DigesterSystem::meter_readings(std::span<double> g, std::size_t headspace) {
+  return g.subspan(Ledger::n_entries() + GasMeter::kReadings * headspace, GasMeter::kReadings);
+}
+
 void DigesterSystem::pipe_flows(std::span<const double> y) {
   for (std::size_t h = 0; h < flows_.size(); ++h) flows_[h] = headspace_gas(y, h).flow;
 }
 
 void DigesterSystem::quadrature_rates(std::span<const double> y, std::span<double> g) {
   pipe_flows(y);
-  ledger_.rates(y, flows_, g);
+  ledger_.rates(y, flows_, g.first(Ledger::n_entries()));
+  for (std::size_t h = 0; h < meters_.size(); ++h) {
+    const auto read =
+        meters_[h].flows(layout_.gases(y, h), headspace_gas(y, h).pressure, flows_[h]);
+    std::ranges::copy(read, meter_readings(g, h).begin());
+  }
   if (closure_.closes_all()) return;
   gather_gases(y, gases_);
   kinetics_.rates(layout_.zones(y), gases_, source_, transfer_);
@@ -276,8 +287,11 @@ void DigesterSystem::quadrature_rates_along(std::span<const double> y, std::span
     }
     flows_[h] = gas.flow;
     flows_along_[h] = gas.by_pressure * pressure_along;
+    const auto read = meters_[h].flows_along(layout_.gases(y, h), layout_.gases(v, h), gas.pressure,
+                                             pressure_along, flows_[h], flows_along_[h]);
+    std::ranges::copy(read, meter_readings(gv, h).begin());
   }
-  ledger_.rates_along(y, v, flows_, flows_along_, gv);
+  ledger_.rates_along(y, v, flows_, flows_along_, gv.first(Ledger::n_entries()));
   if (closure_.closes_all()) return;
   if (!std::ranges::equal(made_at_, y)) {
     gather_gases(y, gases_);

@@ -9,6 +9,7 @@
 
 #include "core/dae/dae_system.hpp"
 #include "kinetics/zone_kinetics.hpp"
+#include "network/gas_meter.hpp"
 #include "network/gas_pipe.hpp"
 #include "network/ledger.hpp"
 #include "network/model_closure.hpp"
@@ -29,7 +30,8 @@ struct HeadspaceGas {
 ///   zone:       dc/dt = transport + source(c, pH, g);   0 = implicit(c, pH)
 ///   headspace:  V_gas dg/dt = sum_z V_z transfer_z - g q(P),  P = sum p_i + vapour pressure,
 ///               p_i = g_i * kmol_per_unit * R * T
-/// with zones and headspaces of constant volume. Quadratures: the entries of network/ledger.hpp.
+/// with zones and headspaces of constant volume. Quadratures: the entries of network/ledger.hpp,
+/// then those of network/gas_meter.hpp for each headspace.
 class DigesterSystem final : public core::DaeSystem {
  public:
   struct Options {
@@ -40,7 +42,10 @@ class DigesterSystem final : public core::DaeSystem {
   DigesterSystem(const Case& the_case, const FlowBalance& balance, const Options& options);
 
   [[nodiscard]] std::size_t n_unknowns() const override { return layout_.n_unknowns(); }
-  [[nodiscard]] std::size_t n_quadratures() const override { return Ledger::n_entries(); }
+  /// The ledger's entries, then the gas meter of each headspace.
+  [[nodiscard]] std::size_t n_quadratures() const override {
+    return Ledger::n_entries() + GasMeter::kReadings * layout_.n_headspaces();
+  }
   [[nodiscard]] std::span<const std::uint8_t> differential() const override {
     return differential_;
   }
@@ -74,6 +79,7 @@ class DigesterSystem final : public core::DaeSystem {
   void locate_kinetics();
   void add_pipe_jacobian(std::span<const double> y, std::span<double> values) const;
   void pipe_flows(std::span<const double> y);
+  static std::span<double> meter_readings(std::span<double> g, std::size_t headspace);
 
   const Case& case_;
   StateLayout layout_;
@@ -90,6 +96,7 @@ class DigesterSystem final : public core::DaeSystem {
   core::SparsePattern pattern_;
   std::vector<double> bar_per_unit_;  ///< n_headspaces * n_gases: partial pressure of one unit
   std::vector<double> vapour_;        ///< [bar] one per headspace
+  std::vector<GasMeter> meters_;      ///< one per headspace
 
   /// Where entries of the kinetic Jacobian go: values[position] += weight * kinetic[entry].
   struct Destination {

@@ -102,7 +102,19 @@ void assemble_warnings(const Case& the_case, const DigesterSystem& system,
         "{} is {:.3g} in {}: below 0 by more than the tolerance explains; try a tighter tolerance",
         system.unknown_quantity(worst), y[worst], system.unknown_place(worst)));
   }
-  if (!steady || the_case.kinetics.gases.empty()) return;
+  if (the_case.kinetics.gases.empty()) return;
+  // Digesters run at some tens of mbar over the outside: common practice, no source.
+  constexpr double kHighOverpressure = 0.3;  // bar
+  for (std::size_t h = 0; h < result.headspaces.size(); ++h) {
+    const double over =
+        result.headspaces[h].pressure - the_case.headspaces[h].pipe.back_pressure.value();
+    if (over <= kHighOverpressure) continue;
+    result.warnings.push_back(fmt::format(
+        "headspace \"{}\" stands {:.2g} bar over its back pressure: no digester cover bears that; "
+        "check the pipe's coefficient and opening pressure",
+        result.headspaces[h].name, over));
+  }
+  if (!steady) return;
   for (const HeadspaceResult& headspace : result.headspaces) {
     if (headspace.pipe_open) continue;
     result.warnings.push_back(

@@ -1,5 +1,6 @@
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <array>
 
 #include "core/near_name.hpp"
@@ -61,6 +62,12 @@ void read_place_start(CaseReading& reading, ObjectReader& start, const std::stri
       [&](const std::string& name, const Json& node, const std::string& pointer) {
         const bool exists = kind == CaseReading::Kind::zone ? model.component(name).has_value()
                                                             : model.gas(name).has_value();
+        const bool is_implicit =
+            kind == CaseReading::Kind::zone &&
+            std::any_of(model.implicits.begin(), model.implicits.end(),
+                        [&](const kinetics::Implicit& implicit) { return implicit.name == name; });
+        // A summary's state may be pasted as it stands: pH and the like follow from the rest.
+        if (is_implicit) return;
         if (reading.has_kinetics && !exists) {
           reading.fault(pointer, fmt::format("\"{}\"", name),
                         fmt::format("the model \"{}\" has no such {}", model.name,
@@ -87,6 +94,12 @@ void read_start(CaseReading& reading, ObjectReader& run) {
       if (settings.given_start.contains(zone.name)) continue;
       reading.result.warnings.push_back(
           fmt::format("\"start\" does not name zone \"{}\": it starts as clean water", zone.name));
+    }
+    for (const Headspace& headspace : reading.result.headspaces) {
+      if (settings.given_start.contains(headspace.name)) continue;
+      reading.result.warnings.push_back(fmt::format(
+          "\"start\" does not name headspace \"{}\": it starts with the model's seed gas",
+          headspace.name));
     }
     return;
   }

@@ -36,6 +36,11 @@ struct HeadspaceResult {
   double methane_flow_normal = 0.0;  ///< [m3/d] same conditions
   double methane_share_dry = 0.0;    ///< [1] of the dry gas
   bool pipe_open = true;
+  /// Time means over the run [m3/d], exact (integrated beside the state); of a steady state the
+  /// values above.
+  double mean_gas_flow = 0.0;
+  double mean_gas_flow_normal_dry = 0.0;
+  double mean_methane_flow_normal = 0.0;
 };
 
 struct FlowResult {

@@ -70,6 +70,17 @@ std::string with_groups(std::string text, const std::string& groups) {
   return groups.empty() ? text : text + "; " + groups;
 }
 
+/// Time means behind the gas pipes from the quadratures of a stretch of `days`.
+void read_gas_meters(std::span<const double> quadratures, double days, RunResult& result) {
+  const double* read = quadratures.data() + Ledger::n_entries();
+  for (HeadspaceResult& headspace : result.headspaces) {
+    headspace.mean_gas_flow = read[GasMeter::kWet] / days;
+    headspace.mean_gas_flow_normal_dry = read[GasMeter::kNormalDry] / days;
+    headspace.mean_methane_flow_normal = read[GasMeter::kMethane] / days;
+    read += GasMeter::kReadings;
+  }
+}
+
 core::IntegratorCounts counts_of(const core::SteadyReport& report,
                                  const core::LinearSolver& solver) {
   core::IntegratorCounts counts;
@@ -103,6 +114,7 @@ core::Result<RunResult> run_steady(const Case& the_case, const FlowBalance& bala
   std::vector<double> g(system.n_quadratures());
   system.quadrature_rates(y, g);
   result.balances = system.ledger().balances(g, Stored{}, Stored{});
+  read_gas_meters(g, 1.0, result);
   if (!the_case.schedules.empty()) {
     result.warnings.emplace_back(
         "a steady state is that of the mean conditions: every schedule is at its mean (kind "
@@ -148,6 +160,15 @@ core::Result<core::Done> recorded_run(const Case& the_case, DigesterSystem& syst
   SnapshotMaker snapshots(the_case, system);
   SeriesRecorder recorder(the_case, system, snapshots);
   const std::vector<double> times = record_times(from, until, record_every);
+  for (const Schedule& schedule : the_case.schedules) {
+    const double period = schedule.timeline.period().value_or(0.0);
+    if (period <= 0.0 || period >= 4.0 * record_every) continue;
+    result.warnings.push_back(fmt::format(
+        "schedule \"{}\" repeats every {:.3g} d and the history is recorded every {:.3g} "
+        "d: it shows samples of the switching, not its means; record oftener, or take "
+        "the means of the summary",
+        schedule.name, period, record_every));
+  }
   const Stored before = stored_in(system, y);
   std::vector<double> q(system.n_quadratures(), 0.0);
   core::IntegrationRequest request;
@@ -165,6 +186,7 @@ core::Result<core::Done> recorded_run(const Case& the_case, DigesterSystem& syst
   OperatingPoint mean = system.operation().at(until);
   mean.rates = system.operation().mean_rates(from, until);
   assemble_places(the_case, system, snapshots, y, mean, result);
+  read_gas_meters(q, until - from, result);
   result.solver = integrator.counts();
   result.unknowns = system.n_unknowns();
   assemble_warnings(the_case, system, y, the_case.run.tolerance, false, result);

@@ -38,7 +38,13 @@ std::vector<double> given_state(const Case& the_case, const StateLayout& layout)
   }
   for (std::size_t h = 0; h < layout.n_headspaces(); ++h) {
     const auto place = given.find(the_case.headspaces[h].name);
-    if (place == given.end()) continue;
+    if (place == given.end()) {
+      // An empty headspace would be a vacuum: nobody means that by leaving it out.
+      for (std::size_t g = 0; g < model.gases.size(); ++g) {
+        y[layout.in_headspace(h, g)] = model.gases[g].seed;
+      }
+      continue;
+    }
     for (const auto& [name, value] : place->second) {
       const auto gas = model.gas(name);
       SZ_REQUIRE(gas.has_value(), "start names gas {}", name);

@@ -11,7 +11,8 @@ namespace stillzone::network {
 /// not yet solved.
 [[nodiscard]] std::vector<double> seeded_state(const Case& the_case, const StateLayout& layout);
 
-/// What the run block gives by name; what it does not name is 0.
+/// What the run block gives by name; what it does not name is 0, but a headspace not named at all
+/// holds the model's seed gas.
 [[nodiscard]] std::vector<double> given_state(const Case& the_case, const StateLayout& layout);
 
 /// Seeded or given, as the run block says, with the implicit unknowns solved. (Start "steady" is

@@ -5,7 +5,9 @@
 
 #include <ctime>
 #include <filesystem>
+#include <utility>
 
+#include "cli/health_remarks.hpp"
 #include "cli/loaded_case.hpp"
 #include "cli/progress.hpp"
 #include "cli/report/run_report.hpp"
@@ -80,6 +82,9 @@ int run_case(const CommandLine& line, Console& console) {
     return network::run_case(loaded->the_case, loaded->balance, hooks);
   }();
   if (!result) return fail(result.failure(), line, console, kNoSolution);
+  for (std::string& remark : health_remarks(loaded->the_case, result.value())) {
+    result.value().warnings.push_back(std::move(remark));
+  }
   log->debug("{} steps, {} Jacobians, {:.3g} s; {}", result.value().solver.steps,
              result.value().solver.jacobian_calls, result.value().seconds,
              result.value().solution_note);

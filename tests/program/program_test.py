@@ -88,6 +88,12 @@ class WrongCommandLines(InFolder):
         self.assertEqual(done.returncode, 2)
         self.assertIn("Usage: stillzone COMMAND", done.stderr)
 
+    def test_setting_without_pointer(self):
+        self.check(["run", "x.json", "--set", "run/until=3 d"], 'is not "/json/pointer=value"')
+
+    def test_flags_that_come_later(self):
+        self.check(["run", "x.json", "--samples", "3"], 'flag "--samples" is not in this version yet')
+
     def test_unknown_schema(self):
         self.check(["schema", "cases"], 'there is no schema "cases". Did you mean "case"?')
 
@@ -185,6 +191,38 @@ class Summary(InFolder):
             self.assertEqual(sorted(flow), ["flow_m3_d", "from", "to"])
         written = json.loads((self.folder / "three_zone_example.out" / "summary.json").read_text())
         self.assertEqual(written, summary)
+
+    def test_a_summary_state_can_be_the_next_start(self):
+        done = run("run", CASES / "short_circuit_stagnant.json", "--json", "--quiet",
+                   cwd=self.folder)
+        first = json.loads(done.stdout)
+        start = {name: zone["state"] for name, zone in first["zones"].items()}
+        start |= {name: space["state"] for name, space in first["headspaces"].items()}
+        done = run("run", CASES / "short_circuit_stagnant.json", "--json", "--quiet", "--set",
+                   "/run/start=" + json.dumps(start), cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        again = json.loads(done.stdout)
+        for name, zone in first["zones"].items():
+            for key, value in zone["state"].items():
+                self.assertAlmostEqual(again["zones"][name]["state"][key], value, delta=1e-9)
+
+    def test_means_of_a_dynamic_run(self):
+        done = run("run", CASES / "three_zone_example.json", "--json", "--quiet",
+                   "--set", "/run/until=2 d", cwd=self.folder)
+        summary = json.loads(done.stdout)
+        self.assertGreater(summary["headspaces"]["dome"]["means"]["gas_flow_m3_d"], 0.0)
+        self.assertIn("S_ac", summary["zones"]["core"]["means"])
+        self.assertIn("means", summary["states_are"])
+
+    def test_warnings_where_a_result_worries(self):
+        done = run("run", CASES / "ideal_tank.json", "--json", "--quiet",
+                   "--set", "/temperature=20 degC", cwd=self.folder)
+        warnings = " ".join(json.loads(done.stdout)["warnings"])
+        self.assertIn("is at 20.0 degC; the rates of model", warnings)
+        done = run("run", CASES / "ideal_tank.json", "--json", "--quiet",
+                   "--set", "/feeds/sludge/flow=1700 m3/d", cwd=self.folder)
+        if done.returncode == 0:
+            self.assertIn("outside 6.6 to 8.2", " ".join(json.loads(done.stdout)["warnings"]))
 
     def test_series_has_units_and_starts_at_zero(self):
         done = run("run", CASES / "three_zone_example.json", "--quiet", "--set", "/run/until=1 d",

@@ -71,8 +71,8 @@ std::string quantity_faults(const char* value, Measure measure = Measure::volume
 
 TEST(ObjectReader, BadFitsAreFaults) {
   EXPECT_EQ(quantity_faults(R"({"value": "600 m3", "fit": ["700 m3", "900 m3"]})"),
-            "c.json /v/fit (line 1): a value outside these bounds; a fit starts inside its bounds. "
-            "Widen the bounds or move the value.\n");
+            "c.json /v/fit (line 1): the value 600 m3; a fit starts inside its bounds, here 700 to "
+            "900 m3. Widen the bounds or move the value.\n");
   EXPECT_EQ(quantity_faults(R"({"value": "600 m3", "fit": ["900 m3", "100 m3"]})"),
             "c.json /v/fit (line 1): [\"900 m3\", \"100 m3\"]; the low end comes first and is "
             "smaller. Swap the two.\n");
