@@ -52,12 +52,19 @@ std::string when(const network::RunResult& result) {
   return "At the end of day " + brief(result.until);
 }
 
+/// What the gas is a mean over.
+std::string mean_over(const network::RunResult& result) {
+  if (result.kind == "steady") return "At steady state";
+  if (result.kind == "periodic") return "On average over its repeating cycle";
+  return "On average over the run";
+}
+
 std::string gas_sentence(const RunReportInput& input, const NetworkFacts& facts) {
   double methane = 0.0;
   double gas = 0.0;
   for (const auto& headspace : input.result.headspaces) {
-    methane += headspace.methane_flow_normal;
-    gas += headspace.gas_flow_normal_dry;
+    methane += headspace.mean_methane_flow_normal;
+    gas += headspace.mean_gas_flow_normal_dry;
   }
   const std::string feed = fmt::format("from {} m\u00B3/d of feed (nominal retention time {} d)",
                                        brief(facts.feed), brief(facts.retention, 3));
@@ -65,12 +72,13 @@ std::string gas_sentence(const RunReportInput& input, const NetworkFacts& facts)
     return fmt::format("{} the case has no headspace, so no gas is computed, {}.",
                        when(input.result), feed);
   }
-  if (!(gas > 0.0))
-    return fmt::format("{} no gas leaves the digester, {}.", when(input.result), feed);
+  if (!(gas > 0.0)) {
+    return fmt::format("{} no gas leaves the digester, {}.", mean_over(input.result), feed);
+  }
   return fmt::format(
       "{} the digester gives <b>{} m\u00B3/d of methane</b> (0 \u00B0C, 1.01325 "
       "bar), {} % of its dry gas, {}.",
-      when(input.result), brief(methane), brief(100.0 * methane / gas, 3), feed);
+      mean_over(input.result), brief(methane), brief(100.0 * methane / gas, 3), feed);
 }
 
 std::string water_sentence(const RunReportInput& input) {
@@ -79,7 +87,7 @@ std::string water_sentence(const RunReportInput& input) {
   const std::string lead = has_vfa ? vfa : "pH";
   const Extremes range = extremes_of(input.result.zones, lead);
   if (range.lowest == nullptr) return "The kinetic model has neither VFA nor pH to judge zones by.";
-  std::string text;
+  std::string text = input.result.kind == "steady" ? "" : when(input.result) + ": ";
   for (const auto& outlet : input.result.outlets) {
     const auto value = value_at(outlet.state, lead);
     const auto ph = value_at(outlet.state, "pH");
@@ -317,7 +325,9 @@ std::string gas_section(const RunReportInput& input) {
                 {"gas flow, dry, 0 \u00B0C and 1.01325 bar", "m\u00B3/d"},
                 {"methane flow, 0 \u00B0C and 1.01325 bar", "m\u00B3/d"},
                 {"methane share of the dry gas", "%"},
-                {"pipe", ""}};
+                {"pipe", ""},
+                {"mean gas flow, dry, 0 \u00B0C and 1.01325 bar", "m\u00B3/d"},
+                {"mean methane flow, 0 \u00B0C and 1.01325 bar", "m\u00B3/d"}};
   for (const auto& h : input.result.headspaces) {
     table.head.push_back(h.name);
     const std::vector<std::string> cells = {shown(h.pressure, 5),
@@ -325,7 +335,9 @@ std::string gas_section(const RunReportInput& input) {
                                             shown(h.gas_flow_normal_dry),
                                             shown(h.methane_flow_normal),
                                             shown(100.0 * h.methane_share_dry, 3),
-                                            h.pipe_open ? "open" : "closed"};
+                                            h.pipe_open ? "open" : "closed",
+                                            shown(h.mean_gas_flow_normal_dry),
+                                            shown(h.mean_methane_flow_normal)};
     for (std::size_t i = 0; i < cells.size(); ++i) table.rows[i].push_back(cells[i]);
   }
   const auto& first = input.result.headspaces.front().state;
@@ -339,7 +351,12 @@ std::string gas_section(const RunReportInput& input) {
       table.rows.push_back(std::move(row));
     }
   }
-  return html_of(table);
+  const std::string intro =
+      input.result.kind == "steady"
+          ? std::string()
+          : fmt::format("<p>{}; means are over the {}.</p>\n", when(input.result),
+                        input.result.kind == "periodic" ? "cycle" : "whole run");
+  return intro + html_of(table);
 }
 
 std::string history_section(const RunReportInput& input) {

@@ -65,7 +65,9 @@ NetworkFacts network_facts(const RunReportInput& input) {
     ZoneFacts& zone = facts.zones[z];
     zone.turnover = the_case.zones[z].volume.value() / inflow[z];
     zone.stagnant = zone.turnover > kStagnantTurnovers * facts.retention;
-    zone.short_circuit = facts.zones.size() > 1 && zone.feed > 0.0 && zone.drawn > 0.0;
+    // Where feed and outlet meet in what is most of the tank, nothing is cut short.
+    zone.short_circuit = zone.feed > 0.0 && zone.drawn > 0.0 &&
+                         the_case.zones[z].volume.value() < 0.5 * facts.volume;
   }
   return facts;
 }
@@ -110,7 +112,7 @@ NetworkDrawing network_drawing(const RunReportInput& input, const NetworkFacts& 
     dome.name = headspace.name;
     for (const auto& result : input.result.headspaces) {
       if (result.name != headspace.name) continue;
-      dome.note = fmt::format("{} m\u00B3/d CH\u2084", brief(result.methane_flow_normal, 3));
+      dome.note = fmt::format("{} m\u00B3/d CH\u2084", brief(result.mean_methane_flow_normal, 3));
     }
     drawing.domes.push_back(dome);
   }

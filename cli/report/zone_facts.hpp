@@ -16,7 +16,7 @@ struct ZoneFacts {
   double feed = 0.0;      ///< [m3/d] that enters it straight from feeds
   double drawn = 0.0;     ///< [m3/d] that leaves it straight to outlets
   bool stagnant = false;
-  bool short_circuit = false;  ///< fed and drained itself, and other zones exist
+  bool short_circuit = false;  ///< fed and drained itself, and less than half of the volume
 };
 
 struct NetworkFacts {

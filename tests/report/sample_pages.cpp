@@ -91,6 +91,9 @@ network::RunResult invented_result(const network::Case& the_case, int n_times, d
     gas.pressure = 1.07;
     gas.gas_flow_normal_dry = 2500.0;
     gas.methane_flow_normal = 1600.0;
+    gas.mean_methane_flow_normal = 1590.0;
+    gas.mean_gas_flow_normal_dry = 2480.0;
+    gas.mean_gas_flow = 2900.0;
     gas.methane_share_dry = 0.64;
     result.headspaces.push_back(gas);
     add_column(result.series, headspace.name, "methane_flow_normal", "m3/d", 1600.0, 200.0, 1);
