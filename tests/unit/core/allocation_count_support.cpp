@@ -14,6 +14,11 @@ void* operator new(std::size_t size) {
   if (void* memory = std::malloc(size == 0 ? 1 : size)) return memory;  // NOLINT
   throw std::bad_alloc();
 }
+// std::stable_sort asks for its buffer this way and gives it back to the operators below.
+void* operator new(std::size_t size, const std::nothrow_t& /*tag*/) noexcept {
+  ++n_allocations;
+  return std::malloc(size == 0 ? 1 : size);  // NOLINT
+}
 void operator delete(void* memory) noexcept { std::free(memory); }               // NOLINT
 void operator delete(void* memory, std::size_t) noexcept { std::free(memory); }  // NOLINT
 

@@ -22,6 +22,11 @@ void* operator new(std::size_t size) { return counted(size, alignof(std::max_ali
 void* operator new(std::size_t size, std::align_val_t alignment) {
   return counted(size, static_cast<std::size_t>(alignment));
 }
+// std::stable_sort asks for its buffer this way and gives it back to the operators below.
+void* operator new(std::size_t size, const std::nothrow_t& /*tag*/) noexcept {
+  ++count;
+  return std::malloc(size == 0 ? 1 : size);  // NOLINT
+}
 void operator delete(void* memory) noexcept { std::free(memory); }
 void operator delete(void* memory, std::size_t) noexcept { std::free(memory); }
 void operator delete(void* memory, std::align_val_t) noexcept { std::free(memory); }
