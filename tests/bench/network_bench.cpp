@@ -108,8 +108,8 @@ void report_memory(benchmark::State& state) {
 }
 
 void per_zone(benchmark::State& state) {
-  state.counters["ns_per_zone"] = benchmark::Counter(
-      static_cast<double>(state.range(0)) * 1e-9,
+  state.counters["per_zone"] = benchmark::Counter(
+      static_cast<double>(state.range(0)),
       benchmark::Counter::kIsIterationInvariantRate | benchmark::Counter::kInvert);
 }
 
