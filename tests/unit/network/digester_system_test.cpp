@@ -85,6 +85,9 @@ void expect_exact_jacobian(DigesterSystem& system, const std::vector<double>& y)
   }
 }
 
+/// Invented.
+constexpr const char* kTwoStepFeed = R"({ "S1": 9.5, "S2": 90, "Z": 120, "C": 130 })";
+
 class EveryFlow : public ::testing::TestWithParam<std::pair<const char*, const char*>> {};
 
 TEST_P(EveryFlow, JacobianIsExactInEveryOperatingStateAndStateOfThePipe) {
@@ -167,6 +170,7 @@ INSTANTIATE_TEST_SUITE_P(Models, EveryFlow,
                          ::testing::Values(std::pair(R"("adm1")", kSludge),
                                            std::pair(R"("first_order")",
                                                      R"({ "X_degradable": 30, "X_residue": 20 })"),
+                                           std::pair(R"("two_step")", kTwoStepFeed),
                                            std::pair(R"("inert")", R"({ "S_tracer": 1 })")),
                          [](const auto& test) {
                            std::string name = test.param.first;
