@@ -4,12 +4,13 @@
 
 #include <algorithm>
 #include <array>
+#include <cctype>
+#include <charconv>
 #include <cmath>
 #include <utility>
 #include <vector>
 
 #include "core/csv_table.hpp"
-#include "core/near_name.hpp"
 
 namespace stillzone::network {
 namespace {
@@ -25,253 +26,279 @@ struct ErrorModel {
   [[nodiscard]] double at(double value) const { return std::hypot(absolute, relative * value); }
 };
 
-/// A column of the sampling point's CSV, and how its cells become internal units.
-struct Column {
-  std::size_t number = 0;
-  core::UnitReader::Scale scale;
-};
-
-std::optional<std::size_t> find_column(ObjectReader& reader, const core::CsvTable& table) {
-  const auto name = reader.text("column", Need::required);
-  if (!name) return std::nullopt;
-  const auto column = table.column(*name);
-  if (!column) {
-    reader.fault("column", "\"" + *name + "\"", table.name() + " has no such column",
-                 core::name_hint(*name, table.header()));
-  }
-  return column;
-}
-
-std::optional<core::UnitReader::Scale> read_scale(ObjectReader& reader, Measure measure) {
-  const auto unit = reader.text("unit", Need::required);
-  if (!unit) return std::nullopt;
-  std::string problem;
-  auto scale = reader.context().units.scale_of(*unit, measure, problem);
-  if (!scale) {
-    reader.fault("unit", "\"" + *unit + "\"", problem,
-                 fmt::format("Write a unit such as {}.", core::example_units(measure)));
-  }
-  return scale;
-}
-
 /// One part of "error": "0.10 g/m3" or "3 %".
-void add_error_part(const core::ReadingContext& context, const core::Json& node,
-                    const std::string& pointer, ErrorModel& error) {
+void add_error_part(ObjectReader& reader, const core::Json& node, const std::string& pointer,
+                    ErrorModel& error) {
   const std::string text = node.is_string() ? node.get<std::string>() : std::string();
-  if (!text.empty() && text.back() == '%') {
-    const auto share = core::read_quantity(context, node, pointer, Measure::share,
-                                           ObjectReader::positive(Measure::share));
-    if (share) error.relative = *share;
-    return;
+  const bool is_share = text.find('%') != std::string::npos;
+  double& part = is_share ? error.relative : error.absolute;
+  const Measure measure = is_share ? Measure::share : Measure::concentration;
+  const auto value = core::read_quantity(reader.context(), node, pointer, measure,
+                                         ObjectReader::positive(measure));
+  if (!value) return;
+  if (part > 0.0) {
+    reader.fault("error", is_share ? "two shares" : "two concentrations",
+                 "an error has one share and one concentration at most", "Take one of them out.");
   }
-  const auto value = core::read_quantity(context, node, pointer, Measure::concentration,
-                                         ObjectReader::positive(Measure::concentration));
-  if (value) error.absolute = 1000.0 * *value;
+  part = is_share ? *value : 1000.0 * *value;
 }
 
 ErrorModel read_error(ObjectReader& reader) {
   ErrorModel error;
   const core::Json* node = reader.raw("error");
-  if (node == nullptr) {
+  if (node == nullptr || (node->is_array() && node->empty())) {
     reader.fault(
-        "error", "no measurement error", "the fit weighs every sample by its standard deviation",
+        node == nullptr ? "" : "error", node == nullptr ? "no \"error\"" : "an empty list",
+        "the fit weighs every sample by its standard deviation",
         "Add \"error\": \"3 %\", \"0.1 g/m3\" or both as a list; the laboratory knows it.");
-    error.relative = 0.05;
     return error;
   }
   if (!node->is_array()) {
-    add_error_part(reader.context(), *node, reader.pointer_to("error"), error);
+    add_error_part(reader, *node, reader.pointer_to("error"), error);
     return error;
   }
   for (std::size_t i = 0; i < node->size(); ++i) {
-    add_error_part(reader.context(), (*node)[i],
-                   fmt::format("{}/{}", reader.pointer_to("error"), i), error);
+    add_error_part(reader, (*node)[i], fmt::format("{}/{}", reader.pointer_to("error"), i), error);
   }
   return error;
 }
 
-/// Reads cells into samples.
-class RowReader {
- public:
-  RowReader(const core::CsvTable& table, core::FaultList& faults)
-      : table_(table), faults_(faults) {}
+/// "<0.02", "< 0,02" -> 0.02.
+std::optional<double> written_limit(std::string_view cell) {
+  cell.remove_prefix(1);
+  while (!cell.empty() && (cell.front() == ' ' || cell.front() == '=')) cell.remove_prefix(1);
+  std::string text(cell);
+  std::replace(text.begin(), text.end(), ',', '.');
+  double limit = 0.0;
+  const auto read = std::from_chars(text.data(), text.data() + text.size(), limit);
+  if (read.ec != std::errc() || read.ptr != text.data() + text.size()) return std::nullopt;
+  if (!(limit > 0.0) || !std::isfinite(limit)) return std::nullopt;
+  return limit;
+}
 
-  /// Times in days of model time; dates against the clock's epoch.
-  struct TimeColumn {
-    Column column;
-    std::optional<DateOrder> dates;
-    double epoch = 0.0;
-  };
-
-  std::optional<double> time(std::size_t row, const TimeColumn& column) {
-    if (!column.dates) {
-      const auto number = table_.number(row, column.column.number, faults_);
-      if (!number) return std::nullopt;
-      return *number * column.column.scale.scale + column.column.scale.offset;
+/// "nd", "<LOD", ...: under the limit, which the cell does not state.
+bool says_not_detected(std::string_view cell) {
+  std::string word;
+  for (const char c : cell) {
+    if (std::isalpha(static_cast<unsigned char>(c)) != 0) {
+      word += static_cast<char>(std::tolower(static_cast<unsigned char>(c)));
+    } else if (c != '<' && c != '.' && c != ' ') {
+      return false;
     }
-    const std::string_view cell = table_.cell(row, column.column.number);
-    if (cell.empty()) return std::nullopt;
-    const auto days = read_date_time(cell, *column.dates);
-    if (!days) {
-      faults_.add({.file = table_.name(),
-                   .pointer = "column " + table_.header()[column.column.number],
-                   .line = table_.line(row),
-                   .found = fmt::format("\"{}\"", cell),
-                   .allowed = "a date and time such as 2026-03-02 14:30",
-                   .way_out = "Write the date in the order that \"dates\" states."});
-      return std::nullopt;
-    }
-    return *days - column.epoch;
   }
+  static constexpr std::array<std::string_view, 8> kWords = {"nd",  "bdl", "lod", "loq",
+                                                             "mdl", "dl",  "bql", "notdetected"};
+  return std::find(kWords.begin(), kWords.end(), word) != kWords.end();
+}
 
-  /// A value, or the limit of a cell like "<0.02".
-  struct Value {
-    double value = 0.0;
-    bool censored = false;
-  };
-  std::optional<Value> value(std::size_t row, const Column& column) {
-    std::string_view cell = table_.cell(row, column.number);
-    if (!cell.empty() && cell.front() == '<') {
-      cell.remove_prefix(1);
-      std::string number(cell);
-      std::replace(number.begin(), number.end(), ',', '.');
-      char* end = nullptr;
-      const double limit = std::strtod(number.c_str(), &end);
-      if (end != number.c_str() && limit > 0.0) return Value{limit * column.scale.scale, true};
-    }
-    const auto number = table_.number(row, column.number, faults_);
-    if (!number) return std::nullopt;
-    return Value{*number * column.scale.scale + column.scale.offset, false};
-  }
-
- private:
-  const core::CsvTable& table_;
-  core::FaultList& faults_;
+/// A value [g/m3], or the limit it lies under.
+struct SampleValue {
+  double value = 0.0;
+  bool censored = false;
 };
 
-void order_and_merge(SamplingPoint& point) {
-  auto& samples = point.samples;
+/// Reads the value cell of a row; empty when it is missing or a fault.
+std::optional<SampleValue> read_value(CellReader& cells, const core::CsvTable& table,
+                                      std::size_t row, const ValueColumn& column,
+                                      double detection_limit) {
+  const double to_g_m3 = 1000.0 * column.scale.scale;  // the internal unit is kg/m3
+  const std::string_view cell = table.cell(row, column.number);
+  if (says_not_detected(cell)) {
+    if (detection_limit > 0.0) return SampleValue{detection_limit, true};
+    cells.refuse(row, column.number, "a sample under the limit needs the limit",
+                 "Add \"detection_limit\", or write the cell like <0.02.");
+    return std::nullopt;
+  }
+  if (!cell.empty() && cell.front() == '<') {
+    if (const auto limit = written_limit(cell)) return SampleValue{*limit * to_g_m3, true};
+    cells.refuse(row, column.number, "a value under its limit is written like <0.02",
+                 "Write the limit as a number > 0 in the unit of the column.");
+    return std::nullopt;
+  }
+  if (!cell.empty() && cell.front() == '>') {
+    cells.refuse(row, column.number, "a value over the range of the instrument is no measurement",
+                 "Have the sample diluted and measured again, or leave the cell empty.");
+    return std::nullopt;
+  }
+  const auto number = cells.number(row, column.number);
+  if (!number) return std::nullopt;
+  const double value = *number * to_g_m3 + 1000.0 * column.scale.offset;
+  if (detection_limit > 0.0 && value < detection_limit) return SampleValue{detection_limit, true};
+  return SampleValue{value, false};
+}
+
+/// One sample out of several of the same time.
+TracerSample averaged(std::vector<TracerSample>::const_iterator first,
+                      std::vector<TracerSample>::const_iterator last) {
+  TracerSample result = *first;
+  double sum = 0.0;
+  double squares = 0.0;
+  int n = 0;
+  for (auto sample = first; sample != last; ++sample) {
+    if (sample->censored) {
+      if (result.censored && sample->value < result.value) result = *sample;
+      continue;
+    }
+    if (n == 0) result = *sample;
+    sum += sample->value;
+    squares += sample->error * sample->error;
+    ++n;
+  }
+  if (n > 0) {
+    result.value = sum / n;
+    result.error = std::sqrt(squares) / n;
+  }
+  return result;
+}
+
+/// Sorts by time and makes one sample of several of the same time.
+void order_and_merge(std::vector<TracerSample>& samples, SamplingPoint& point) {
+  constexpr double kSameTime = 1e-8;  // [d], a millisecond: dates carry rounding
+  constexpr std::size_t kMostShown = 4;
   const auto earlier = [](const TracerSample& a, const TracerSample& b) { return a.time < b.time; };
   if (!std::is_sorted(samples.begin(), samples.end(), earlier)) {
     std::stable_sort(samples.begin(), samples.end(), earlier);
     point.notes.push_back(point.csv + ": rows were not in time order; sorted");
   }
   std::vector<TracerSample> merged;
-  std::vector<int> counts;
-  for (const TracerSample& sample : samples) {
-    if (merged.empty() || sample.time - merged.back().time > 1e-9) {
-      merged.push_back(sample);
-      counts.push_back(1);
-      continue;
+  std::vector<std::string> repeated;
+  for (auto first = samples.cbegin(); first != samples.cend();) {
+    auto last = first + 1;
+    while (last != samples.cend() && last->time - first->time <= kSameTime) ++last;
+    merged.push_back(averaged(first, last));
+    if (last - first > 1) {
+      std::string lines = fmt::format("{}", first->line);
+      for (auto sample = first + 1; sample != last; ++sample) {
+        lines += fmt::format("{}{}", sample + 1 == last ? " and " : ", ", sample->line);
+      }
+      repeated.push_back(std::move(lines));
     }
-    TracerSample& kept = merged.back();
-    const int n = counts.back()++;
-    point.notes.push_back(fmt::format("{}: lines {} and {} have the same time; averaged", point.csv,
-                                      kept.line, sample.line));
-    if (kept.censored != sample.censored) {
-      if (kept.censored) kept = sample;  // a number says more than a limit
-      continue;
-    }
-    kept.value = (n * kept.value + sample.value) / (n + 1);
-    kept.error = sample.error / std::sqrt(static_cast<double>(n + 1));
+    first = last;
+  }
+  for (std::size_t i = 0; i < std::min(repeated.size(), kMostShown); ++i) {
+    point.notes.push_back(
+        fmt::format("{}: lines {} have the same time; averaged", point.csv, repeated[i]));
+  }
+  if (repeated.size() > kMostShown) {
+    point.notes.push_back(fmt::format("{}: {} more times stand more than once; averaged", point.csv,
+                                      repeated.size() - kMostShown));
   }
   samples = std::move(merged);
 }
 
-struct PointColumns {
-  RowReader::TimeColumn time;
-  Column value;
-};
-
-std::optional<PointColumns> read_columns(ObjectReader& reader, const TestClock& clock,
-                                         const core::CsvTable& table) {
-  PointColumns columns;
-  bool fine = true;
-  if (auto time = reader.object("time", Need::required)) {
-    const auto number = find_column(*time, table);
-    if (time->has("dates")) {
-      static const std::array<std::string, 3> kOrders = {"year first", "day first", "month first"};
-      const auto order = time->word("dates", kOrders, Need::required);
-      if (order) columns.time.dates = date_order_of(*order);
-      columns.time.epoch = clock.epoch();
-      if (!clock.dated()) {
-        time->fault("dates", "dates", "the dose's \"at\" must then be a date too",
-                    "Write \"at\": \"2026-03-02 08:00\" in \"dose\".");
-      }
-      fine = fine && number && order && clock.dated();
-    } else {
-      const auto scale = read_scale(*time, Measure::duration);
-      if (scale) columns.time.column.scale = *scale;
-      fine = fine && number && scale;
+/// Gives every sample its error; a share alone is taken of a floor at least.
+void set_errors(std::vector<TracerSample>& samples, const ErrorModel& error, ObjectReader& reader,
+                SamplingPoint& point) {
+  double floor = 0.0;
+  if (error.absolute <= 0.0) {
+    double largest = 0.0;
+    for (const TracerSample& sample : samples) largest = std::max(largest, sample.value);
+    floor = point.detection_limit > 0.0 ? point.detection_limit : 0.01 * largest;
+    if (!(floor > 0.0)) {
+      reader.fault("error", core::shown(*reader.raw("error")), "no sample of this table is above 0",
+                   "Check the value column, or add an absolute part to \"error\".");
+      return;
     }
-    if (number) columns.time.column.number = *number;
-    time->finish();
-  } else {
-    fine = false;
   }
-  if (auto value = reader.object("value", Need::required)) {
-    const auto number = find_column(*value, table);
-    const auto scale = read_scale(*value, Measure::concentration);
-    if (number) columns.value.number = *number;
-    if (scale) columns.value.scale = {1000.0 * scale->scale, 1000.0 * scale->offset};
-    fine = fine && number && scale;
-    value->finish();
-  } else {
-    fine = false;
+  std::size_t n_raised = 0;
+  std::size_t n_negative = 0;
+  std::size_t n_far_below = 0;
+  for (TracerSample& sample : samples) {
+    sample.error = error.at(std::max(sample.value, floor));
+    n_raised += sample.value < floor ? 1U : 0U;
+    n_negative += sample.value < 0.0 ? 1U : 0U;
+    n_far_below += sample.value < -3.0 * sample.error ? 1U : 0U;
   }
-  if (!fine) return std::nullopt;
-  return columns;
+  if (n_raised > 0 && error.absolute <= 0.0 && point.detection_limit <= 0.0) {
+    point.notes.push_back(fmt::format(
+        "{}: the error is a share alone; for {} small value{} it is taken of 1 % of the largest "
+        "value. State an absolute part or the detection limit too",
+        point.csv, n_raised, n_raised == 1 ? "" : "s"));
+  }
+  if (n_negative > 0) {
+    point.notes.push_back(fmt::format(
+        "{}: {} value{} below zero, kept as measured{}", point.csv, n_negative,
+        n_negative == 1 ? "" : "s",
+        n_far_below > 0
+            ? fmt::format("; {} by more than three errors: check the blank", n_far_below)
+            : ""));
+  }
 }
 
-void read_rows(const core::CsvTable& table, const PointColumns& columns, const ErrorModel& error,
-               double dose_at, core::FaultList& faults, SamplingPoint& point) {
-  RowReader rows(table, faults);
-  int n_missing = 0;
+/// A serial day number where elapsed time was announced, or a unit far too large.
+bool plausible_times(const std::vector<TracerSample>& samples, const TimeColumn& column,
+                     double dose_at, const core::CsvTable& table, core::FaultList& faults) {
+  if (column.dates || samples.empty()) return true;
+  const auto first = std::min_element(
+      samples.begin(), samples.end(),
+      [](const TracerSample& a, const TracerSample& b) { return a.time < b.time; });
+  const auto day = serial_day(first->time);
+  if (!day || serial_day(dose_at)) return true;
+  faults.add({.file = table.name(),
+              .pointer = "column " + table.header()[column.number],
+              .line = first->line,
+              .found = fmt::format("{:g} d as the first time", first->time),
+              .allowed = fmt::format("this looks like a spreadsheet's day number (for {})", *day),
+              .way_out = "Give the column the format yyyy-mm-dd hh:mm, export it again and write "
+                         "\"dates\": \"year first\" in place of \"unit\"."});
+  return false;
+}
+
+std::vector<TracerSample> read_rows(const core::CsvTable& table, const TimeAndValue& columns,
+                                    core::FaultList& faults, SamplingPoint& point) {
+  CellReader cells(table);
+  std::vector<TracerSample> samples;
   for (std::size_t row = 0; row < table.n_rows(); ++row) {
-    const auto time = rows.time(row, columns.time);
-    const auto value = rows.value(row, columns.value);
-    if (!time || !value) {
-      ++n_missing;
-      continue;
-    }
-    TracerSample sample{.time = *time,
-                        .value = value->value,
-                        .error = 0.0,
-                        .censored = value->censored,
-                        .line = table.line(row)};
-    if (!sample.censored && sample.value < point.detection_limit) {
-      sample.censored = true;
-      sample.value = point.detection_limit;
-    }
-    sample.error = error.at(std::max(sample.value, point.detection_limit));
+    const auto time = cells.time(row, columns.time);
+    const auto value = read_value(cells, table, row, columns.value, point.detection_limit);
+    if (!time || !value) continue;
+    samples.push_back({.time = *time,
+                       .value = value->value,
+                       .error = 0.0,
+                       .censored = value->censored,
+                       .line = table.line(row)});
+  }
+  if (!cells.finish(faults)) return samples;
+  if (samples.size() < table.n_rows()) {
+    point.notes.push_back(fmt::format("{}: {} of {} rows have no time or no value; left out",
+                                      point.csv, table.n_rows() - samples.size(), table.n_rows()));
+  }
+  return samples;
+}
+
+/// The samples of a table, cleaned, into the point. Faults when nothing usable is left.
+void read_samples(ObjectReader& reader, const core::CsvTable& table, const TimeAndValue& columns,
+                  const ErrorModel& error, double dose_at, SamplingPoint& point) {
+  core::FaultList& faults = reader.context().faults;
+  const std::size_t n_before = faults.all().size();
+  std::vector<TracerSample> samples = read_rows(table, columns, faults, point);
+  if (faults.all().size() > n_before) return;
+  if (samples.empty()) {
+    reader.fault("csv", "\"" + point.csv + "\"", "no row has both a time and a value",
+                 "Check the columns.");
+    return;
+  }
+  if (!plausible_times(samples, columns.time, dose_at, table, faults)) return;
+  set_errors(samples, error, reader, point);
+  order_and_merge(samples, point);
+  for (const TracerSample& sample : samples) {
     (sample.time < dose_at ? point.before : point.samples).push_back(sample);
   }
-  if (n_missing > 0) {
-    point.notes.push_back(fmt::format("{}: {} of {} rows have no time or no value; left out",
-                                      point.csv, n_missing, table.n_rows()));
+  if (point.samples.empty()) {
+    reader.fault("csv",
+                 fmt::format("\"{}\", {} samples, the last {:.3g} d before the dose", point.csv,
+                             samples.size(), dose_at - samples.back().time),
+                 "no sample was taken after the dose",
+                 "Check the time column, its unit and the dose's \"at\".");
   }
 }
 
 }  // namespace
 
-std::optional<double> TestClock::read_start(ObjectReader& dose) {
-  const core::Json* node = dose.raw("at");
-  if (node == nullptr) return 0.0;
-  if (node->is_string()) {
-    const auto days = read_date_time(node->get<std::string>(), DateOrder::year_first);
-    if (days) {
-      dated_ = true;
-      epoch_ = *days;
-      return 0.0;
-    }
-  }
-  const auto at = dose.quantity<Measure::duration>("at", Need::required, {});
-  if (!at) return std::nullopt;
-  return at->value();
-}
-
 std::optional<SamplingPoint> read_sampling_point(ObjectReader& reader, const TestClock& clock,
                                                  const TracerTest& test) {
+  core::FaultList& faults = reader.context().faults;
+  const std::size_t n_before = faults.all().size();
   SamplingPoint point;
   point.at = reader.text("at", Need::optional).value_or("outlet");
   const auto csv = reader.text("csv", Need::required);
@@ -279,26 +306,21 @@ std::optional<SamplingPoint> read_sampling_point(ObjectReader& reader, const Tes
   const auto limit = reader.quantity<Measure::concentration>(
       "detection_limit", Need::optional, ObjectReader::not_negative(Measure::concentration));
   if (limit) point.detection_limit = 1000.0 * limit->value();
-  if (!csv) return std::nullopt;
-  point.csv = *csv;
-  core::FaultList& faults = reader.context().faults;
-  const std::size_t n_before = faults.all().size();
-  const auto table = core::CsvTable::read(reader.context().document.folder() / *csv, faults);
+  const auto table =
+      csv ? core::CsvTable::read(reader.context().document.folder() / *csv, faults) : std::nullopt;
   if (!table) {
     (void)reader.raw("time");
     (void)reader.raw("value");
     return std::nullopt;
   }
-  const auto columns = read_columns(reader, clock, *table);
-  if (!columns) return std::nullopt;
-  read_rows(*table, *columns, error, test.dose_at, faults, point);
-  order_and_merge(point);
-  if (faults.all().size() > n_before) return std::nullopt;
-  if (point.samples.empty()) {
-    reader.fault("csv", "\"" + *csv + "\"", "no sample was taken after the dose",
-                 "Check the time column, its unit and the dose's \"at\".");
-    return std::nullopt;
+  point.csv = *csv;
+  const auto columns = read_time_and_value(reader, clock, *table, Measure::concentration);
+  if (!columns || faults.all().size() > n_before) return std::nullopt;
+  if (clock.dated() && !columns->time.dates) {
+    point.notes.push_back(point.csv + ": its elapsed times are counted from the dose");
   }
+  read_samples(reader, *table, *columns, error, test.dose_at, point);
+  if (faults.all().size() > n_before) return std::nullopt;
   return point;
 }
 

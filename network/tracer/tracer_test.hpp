@@ -45,7 +45,8 @@ struct Background {
   std::string how;     ///< "as stated", "mean of 4 samples before the dose", ...
 };
 
-/// A tracer test, validated and cleaned. Time zero: as in the files; the dose starts at `dose_at`.
+/// A tracer test, validated and cleaned. Time zero: as in the files, or the dose where times are
+/// dates; the dose starts at `dose_at`.
 struct TracerTest {
   std::string title;
   std::string tracer;
@@ -65,7 +66,8 @@ struct TracerTest {
 
   /// Turnovers since the dose: integral of Q/V from dose_at to t (negative before).
   [[nodiscard]] double turnovers(double t) const;
-  /// Its inverse.
+  /// Its inverse: the earliest time of that many turnovers. Infinite when the record ends with no
+  /// flow before they are reached.
   [[nodiscard]] double time_at(double turnovers) const;
 };
 
