@@ -302,6 +302,11 @@ std::optional<double> CsvTable::number(std::size_t row, std::size_t column,
   if (error == std::errc() && end == text.data() + text.size() && std::isfinite(value)) {
     return value;
   }
+  if (!decimal_comma_ && is_number_with(',', text)) {
+    refuse("this table has no decimal commas, so a comma may be a decimal or a thousands mark",
+           "Export it again with decimal points, or with semicolons between the columns.");
+    return std::nullopt;
+  }
   refuse("a number belongs here, or nothing where it is missing",
          "Put units and remarks into the header or another column.");
   return std::nullopt;

@@ -29,6 +29,18 @@ struct ErrorModel {
 /// One part of "error": "0.10 g/m3" or "3 %".
 void add_error_part(ObjectReader& reader, const core::Json& node, const std::string& pointer,
                     ErrorModel& error) {
+  if (node.is_number()) {
+    const core::JsonDocument& document = reader.context().document;
+    const std::string number = core::shown(node);
+    reader.context().faults.add(
+        {.file = document.name(),
+         .pointer = pointer,
+         .line = document.line_of(pointer),
+         .found = number,
+         .allowed = "an error is a share or a concentration",
+         .way_out = fmt::format("Write \"{0} %\" or \"{0} g/m3\", whichever is meant.", number)});
+    return;
+  }
   const std::string text = node.is_string() ? node.get<std::string>() : std::string();
   const bool is_share = text.find('%') != std::string::npos;
   double& part = is_share ? error.relative : error.absolute;
@@ -315,7 +327,7 @@ std::optional<SamplingPoint> read_sampling_point(ObjectReader& reader, const Tes
   }
   point.csv = *csv;
   const auto columns = read_time_and_value(reader, clock, *table, Measure::concentration);
-  if (!columns || faults.all().size() > n_before) return std::nullopt;
+  if (!columns) return std::nullopt;
   if (clock.dated() && !columns->time.dates) {
     point.notes.push_back(point.csv + ": its elapsed times are counted from the dose");
   }

@@ -27,6 +27,12 @@ std::optional<std::size_t> find_column(ObjectReader& reader, const core::CsvTabl
 }
 
 std::optional<core::UnitReader::Scale> read_scale(ObjectReader& reader, Measure measure) {
+  if (!reader.has("unit")) {
+    (void)reader.raw("unit");
+    reader.fault("", "no \"unit\"", "the numbers of a column need their unit",
+                 fmt::format("Add \"unit\", one of {}.", core::example_units(measure)));
+    return std::nullopt;
+  }
   const auto unit = reader.text("unit", Need::required);
   if (!unit) return std::nullopt;
   std::string problem;
@@ -62,10 +68,11 @@ bool read_kind_of_time(ObjectReader& time, const TestClock& clock, TimeColumn& c
     (void)time.raw("unit");
     time.fault("", "\"unit\" and \"dates\"", "times are elapsed or dates, not both",
                "Take one of the two out.");
-    fine = false;
+    return false;
   }
   if (!clock.dated() && !clock.unreadable()) {
-    time.fault("dates", "dates", "the dose's \"at\" must then be a date too",
+    time.fault("dates", core::shown(*time.raw("dates")),
+               "where samples have dates, the dose's \"at\" is a date too",
                "Write \"at\": \"2026-03-02 08:00\" in \"dose\".");
     fine = false;
   }
@@ -162,12 +169,13 @@ void CellReader::refuse(std::size_t row, std::size_t column, std::string allowed
 }
 
 bool CellReader::finish(core::FaultList& faults) {
-  constexpr std::size_t kMost = 4;
+  constexpr std::size_t kMost = 3;
   const auto& all = found_.all();
   for (std::size_t i = 0; i < std::min(all.size(), kMost); ++i) faults.add(all[i]);
   if (all.size() > kMost) {
     faults.add({.file = table_.name(),
-                .found = fmt::format("{} more cells like these", all.size() - kMost),
+                .found = fmt::format("{} more cell{} like these", all.size() - kMost,
+                                     all.size() == kMost + 1 ? "" : "s"),
                 .allowed = "the rest of the table was read too",
                 .way_out = "Check that the right column is named."});
   }

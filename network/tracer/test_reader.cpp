@@ -6,6 +6,7 @@
 #include <utility>
 
 #include "core/near_name.hpp"
+#include "network/tracer/background_reader.hpp"
 #include "network/tracer/flow_record_reader.hpp"
 #include "network/tracer/rtd_model.hpp"
 #include "network/tracer/sample_reader.hpp"
@@ -28,6 +29,24 @@ void fault_at(ObjectReader& reader, const std::string& pointer, std::string foun
                                .found = std::move(found),
                                .allowed = std::move(allowed),
                                .way_out = std::move(way_out)});
+}
+
+/// True when the file says that it is a tracer test; else one fault, and the rest is not worth
+/// reading.
+bool is_a_test(ObjectReader& reader) {
+  const core::Json* kind = reader.raw("stillzone");
+  if (kind == nullptr) {
+    reader.fault("", "no key \"stillzone\"", "a tracer test starts with \"stillzone\": \"test/1\"",
+                 "Add it as the first key.");
+    return false;
+  }
+  const std::string name = kind->is_string() ? kind->get<std::string>() : std::string();
+  if (name == "test/1") return true;
+  reader.fault("stillzone", core::shown(*kind), "this command takes a tracer test, \"test/1\"",
+               name == "case/1"    ? "A case goes to \"stillzone run\" or \"stillzone check\"."
+               : name == "study/1" ? "A study goes to \"stillzone retrofit\"."
+                                   : "Write \"stillzone\": \"test/1\".");
+  return false;
 }
 
 /// "flow": a quantity, or a record.
@@ -53,6 +72,12 @@ void read_flow(ObjectReader& reader, const TestClock& clock, TracerTest& test) {
 
 /// "dose": {"tracer", "mass", "at", "over", "into"} or {"tracer", "step", "at", "into"}.
 void read_dose(ObjectReader& reader, TestClock& clock, TracerTest& test) {
+  if (!reader.has("dose")) {
+    (void)reader.raw("dose");
+    reader.fault("", "no \"dose\"", "a test says what was dosed and when",
+                 "Add \"dose\": {\"tracer\": \"lithium\", \"mass\": \"24 kg\", \"at\": \"0 d\"}.");
+    return;
+  }
   auto dose = reader.object("dose", Need::required);
   if (!dose) return;
   test.tracer = dose->text("tracer", Need::optional).value_or("tracer");
@@ -127,109 +152,6 @@ void read_models(ObjectReader& reader, TracerTest& test) {
   }
 }
 
-/// "background": a concentration, "before dose", or a straight line in time.
-void read_background(ObjectReader& reader, TracerTest& test) {
-  const core::Json* node = reader.raw("background");
-  if (node == nullptr) {
-    test.background.how = "none stated, taken as 0";
-    return;
-  }
-  if (node->is_string()) {
-    const std::string text = node->get<std::string>();
-    if (text == "before dose") {
-      test.background.how = text;
-      return;
-    }
-    if (text.find_first_of("0123456789") == std::string::npos) {
-      reader.fault("background", core::shown(*node),
-                   "a background is a concentration, \"before dose\" or {\"at_dose\": .., "
-                   "\"later\": .., \"after\": ..}",
-                   "Write \"before dose\" to take the mean of the samples before the dose.");
-      return;
-    }
-  }
-  const auto limit = ObjectReader::not_negative(Measure::concentration);
-  if (!node->is_object() || node->contains("value")) {
-    const auto level = reader.quantity<Measure::concentration>("background", Need::required, limit);
-    if (level) test.background.level = 1000.0 * level->value();
-    test.background.how = "as stated";
-    return;
-  }
-  auto drift = reader.object("background", Need::required);
-  if (!drift) return;
-  const auto start = drift->quantity<Measure::concentration>("at_dose", Need::required, limit);
-  const auto end = drift->quantity<Measure::concentration>("later", Need::required, limit);
-  const auto after = drift->quantity<Measure::duration>("after", Need::required,
-                                                        ObjectReader::positive(Measure::duration));
-  drift->finish();
-  if (!start || !end || !after) return;
-  test.background.level = 1000.0 * start->value();
-  test.background.slope = 1000.0 * (end->value() - start->value()) / after->value();
-  test.background.how = fmt::format("drifting, as stated: {:.3g} to {:.3g} g/m3 in {:.3g} d",
-                                    1000.0 * start->value(), 1000.0 * end->value(), after->value());
-}
-
-/// Slope [g/m3/d] of the quantified samples before the dose over its standard error, 0 when nothing
-/// can be said (fewer than 4, or all at once).
-double slope_significance(const std::vector<TracerSample>& before) {
-  double w = 0.0;
-  double wt = 0.0;
-  double wv = 0.0;
-  std::size_t n = 0;
-  for (const TracerSample& s : before) {
-    if (s.censored) continue;
-    const double weight = 1.0 / (s.error * s.error);
-    w += weight;
-    wt += weight * s.time;
-    wv += weight * s.value;
-    ++n;
-  }
-  if (n < 4) return 0.0;
-  double tt = 0.0;
-  double tv = 0.0;
-  for (const TracerSample& s : before) {
-    if (s.censored) continue;
-    const double weight = 1.0 / (s.error * s.error);
-    tt += weight * (s.time - wt / w) * (s.time - wt / w);
-    tv += weight * (s.time - wt / w) * (s.value - wv / w);
-  }
-  return tt > 0.0 ? tv / std::sqrt(tt) : 0.0;
-}
-
-/// "background": "before dose": the mean of the samples before the dose, those under the limit at
-/// half of it (common practice, no source). A drift seen in them is told but not followed: a few
-/// days before the dose say nothing about the weeks after it.
-void background_from_samples(ObjectReader& reader, TracerTest& test) {
-  if (test.background.how != "before dose") return;
-  double sum = 0.0;
-  std::size_t n = 0;
-  std::size_t n_censored = 0;
-  for (const SamplingPoint& point : test.points) {
-    for (const TracerSample& sample : point.before) {
-      sum += sample.censored ? 0.5 * sample.value : sample.value;
-      n_censored += sample.censored ? 1U : 0U;
-      ++n;
-    }
-    if (std::abs(slope_significance(point.before)) > 3.0) {
-      test.notes.push_back(
-          point.csv +
-          ": the samples before the dose drift; their mean is taken. If the drift went on, state "
-          "\"background\": {\"at_dose\": .., \"later\": .., \"after\": ..}");
-    }
-  }
-  if (n == 0) {
-    reader.fault("background", "\"before dose\"", "no sample was taken before the dose",
-                 "State the background as a concentration, or add the earlier samples.");
-    return;
-  }
-  test.background.level = sum / static_cast<double>(n);
-  test.background.how =
-      fmt::format("mean of {} sample{} before the dose", n, n == 1 ? "" : "s") +
-      (n_censored > 0
-           ? fmt::format(", {} of them under the limit and counted at half of it", n_censored)
-           : "");
-}
-
 double last_sample_time(const TracerTest& test) {
   double last = test.dose_at;
   for (const SamplingPoint& point : test.points) {
@@ -290,6 +212,26 @@ void check_places(ObjectReader& reader, const TracerTest& test) {
   }
 }
 
+void read_points(ObjectReader& reader, const TestClock& clock, TracerTest& test) {
+  const core::Json* list = reader.raw("samples");
+  if (list == nullptr || (list->is_array() && list->empty())) {
+    reader.fault(list == nullptr ? "" : "samples",
+                 list == nullptr ? "no \"samples\"" : "an empty list",
+                 "a test has at least one sampling point",
+                 "Add \"samples\": [{\"at\": \"outlet\", \"csv\": .., \"time\": .., \"value\": .., "
+                 "\"error\": ..}].");
+    return;
+  }
+  reader.each_element("samples", Need::required,
+                      [&](const core::Json& node, const std::string& pointer) {
+                        ObjectReader point(reader.context(), node, pointer);
+                        if (auto read = read_sampling_point(point, clock, test)) {
+                          test.points.push_back(std::move(*read));
+                        }
+                        point.finish();
+                      });
+}
+
 /// A test's own quantities are as stated: what is free are the parameters of its models.
 void refuse_free_quantities(ObjectReader& reader,
                             const std::vector<core::FreeQuantity>& free_quantities) {
@@ -322,8 +264,7 @@ std::optional<TracerTest> read_tracer_test(const core::JsonDocument& document,
   const core::ReadingContext context{document, units, faults, free_quantities};
   const std::size_t n_before = faults.all().size();
   ObjectReader reader(context, document.root(), "");
-  static const std::array<std::string, 1> kKind = {"test/1"};
-  (void)reader.word("stillzone", kKind, Need::required);
+  if (!document.root().is_object() || !is_a_test(reader)) return std::nullopt;
   TracerTest test;
   test.title = reader.text("title", Need::optional).value_or("Tracer test");
   const auto volume = reader.quantity<Measure::volume>("volume", Need::required,
@@ -338,20 +279,7 @@ std::optional<TracerTest> read_tracer_test(const core::JsonDocument& document,
   test.recovery_fitted =
       reader.word("recovery", kRecovery, Need::optional).value_or("fitted") == "fitted";
   read_models(reader, test);
-  reader.each_element("samples", Need::required,
-                      [&](const core::Json& node, const std::string& pointer) {
-                        ObjectReader point(context, node, pointer);
-                        if (auto read = read_sampling_point(point, clock, test)) {
-                          test.points.push_back(std::move(*read));
-                        }
-                        point.finish();
-                      });
-  if (const core::Json* list = reader.raw("samples");
-      list != nullptr && list->is_array() && list->empty()) {
-    reader.fault(
-        "samples", "an empty list", "a test has at least one sampling point",
-        "Add {\"at\": \"outlet\", \"csv\": .., \"time\": .., \"value\": .., \"error\": ..}.");
-  }
+  read_points(reader, clock, test);
   refuse_free_quantities(reader, free_quantities);
   reader.finish();
   if (faults.all().size() > n_before) return std::nullopt;

@@ -120,6 +120,18 @@ TEST(CsvTable, LineEndsOfAnyKindCount) {
   EXPECT_EQ(t.line(1), 3);
 }
 
+TEST(CsvTable, ACommaInsideANumberBetweenCommasIsNotGuessed) {
+  FaultList faults;
+  const auto t = CsvTable::parse("a,b\n1,\"7,6\"\n", "t.csv", faults);
+  ASSERT_TRUE(t);
+  EXPECT_FALSE(t->number(0, 1, faults));
+  EXPECT_EQ(
+      faults.text(),
+      "t.csv column b (line 2): \"7,6\"; this table has no decimal commas, so a comma may be a "
+      "decimal or a thousands mark. Export it again with decimal points, or with semicolons "
+      "between the columns.\n");
+}
+
 TEST(CsvTable, TwoDecimalMarksAreNotGuessed) {
   const CsvTable t = table("a;b;c\n1,5;1,234;1.234\n2,5;12.5;2\n");
   FaultList faults;

@@ -2,6 +2,9 @@
 #include <gtest/gtest.h>
 
 #include <cmath>
+#include <filesystem>
+#include <fstream>
+#include <sstream>
 
 #include "tests/unit/network/tracer_reading_support.hpp"
 
@@ -302,7 +305,7 @@ TEST(TracerTestReader, UnreadableCellsAreFaultsAndOnlyAFewAreShown) {
   EXPECT_THAT(read_outlet("t,c\n1,<-1\n").faults, HasSubstr("written like <0.02"));
   std::string wrong = "t,c\n";
   for (int i = 0; i < 100; ++i) wrong += "1,sunny\n";
-  EXPECT_THAT(read_outlet(wrong).faults, HasSubstr("outlet.csv: 96 more cells like these"));
+  EXPECT_THAT(read_outlet(wrong).faults, HasSubstr("outlet.csv: 97 more cells like these"));
 }
 
 TEST(TracerTestReader, AllSamplesCensoredIsAReadableTest) {
@@ -380,6 +383,36 @@ TEST(TracerTestReader, AWrongDoseTimeDoesNotDragOtherFaultsAlong) {
                 .faults,
             "test.json /dose/at (line 8): \"02.03.2026 08:00\"; the date of a dose is written year "
             "first. Write it like \"2026-03-02 08:00\".\n");
+}
+
+TEST(TracerTestReader, EveryBrokenTestGetsItsExactMessages) {
+  namespace fs = std::filesystem;
+  const fs::path folder = fs::path(STILLZONE_SOURCE_DIR) / "tests/program/broken/tests";
+  const core::UnitReader units;
+  int n_files = 0;
+  for (const auto& entry : fs::directory_iterator(folder)) {
+    fs::path file = entry.path();
+    if (file.extension() != ".json") continue;
+    ++n_files;
+    core::FaultList faults;
+    const auto text_of = [](const fs::path& path) {
+      std::ostringstream text;
+      text << std::ifstream(path, std::ios::binary).rdbuf();
+      return text.str();
+    };
+    const auto document =
+        core::JsonDocument::parse(text_of(file), file.filename().string(), folder, faults);
+    if (document) {
+      EXPECT_FALSE(read_tracer_test(*document, units, faults)) << file;
+    }
+    std::string found = faults.text();
+    const std::string prefix = folder.string() + "/";
+    for (auto at = found.find(prefix); at != std::string::npos; at = found.find(prefix, at)) {
+      found.erase(at, prefix.size());
+    }
+    EXPECT_EQ(found, text_of(file.replace_extension(".expected"))) << file;
+  }
+  EXPECT_GE(n_files, 34);
 }
 
 }  // namespace
