@@ -206,6 +206,8 @@ std::optional<KineticModel> ModelReader::read(std::string name) {
   for (ModelParameter& parameter : program_->parameters) {
     parameter.node = *names_->node(parameter.name, TemperatureOf::liquid);
   }
+  // Terms and laws that nothing uses were worked out only now.
+  if (context_.faults.all().size() != n_faults_before) return std::nullopt;
   assemble_sources();
   model_.program = std::move(program_);
   return std::move(model_);
