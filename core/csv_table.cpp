@@ -33,13 +33,18 @@ class CellScanner {
  public:
   CellScanner(std::string_view text, char separator) : text_(text), separator_(separator) {}
 
+  /// Passes over the rest of a line.
+  void skip_line() {
+    while (at_ < text_.size() && text_[at_] != '\n' && text_[at_] != '\r') ++at_;
+    end_line();
+  }
+
   /// The next row that is neither blank nor a comment; false at the end.
   bool next(std::vector<std::string>& cells, int& line) {
     while (at_ < text_.size()) {
       line = line_;
       if (text_[at_] == '#' && text_.substr(at_, 4) != "#N/A") {
-        while (at_ < text_.size() && text_[at_] != '\n' && text_[at_] != '\r') ++at_;
-        end_line();
+        skip_line();
         continue;
       }
       read_row(cells);
@@ -137,6 +142,55 @@ char find_separator(std::string_view text) {
   return ',';
 }
 
+/// The separator of a first line "sep=;", as some spreadsheets write and read.
+std::optional<char> stated_separator(std::string_view text) {
+  const std::string_view line = text.substr(0, text.find_first_of("\r\n"));
+  if (line.size() != 5 || line.substr(0, 4) != "sep=") return std::nullopt;
+  if (std::string_view(";,\t").find(line.back()) == std::string_view::npos) return std::nullopt;
+  return line.back();
+}
+
+/// Length of the UTF-8 character at the start of a text; 0 when there is none. Surrogates, overlong
+/// forms and code points beyond U+10FFFF are none.
+std::size_t utf8_length(std::string_view text) {
+  const auto byte = [&](std::size_t i) { return static_cast<unsigned char>(text[i]); };
+  const unsigned first = byte(0);
+  if (first < 0x80U) return 1;
+  const std::size_t n = first >= 0xF0U ? 4 : first >= 0xE0U ? 3 : 2;
+  if (first < 0xC2U || first > 0xF4U || text.size() < n) return 0;
+  for (std::size_t i = 1; i < n; ++i) {
+    if ((byte(i) & 0xC0U) != 0x80U) return 0;
+  }
+  const unsigned second = byte(1);
+  const bool wrong = (first == 0xE0U && second < 0xA0U) || (first == 0xEDU && second > 0x9FU) ||
+                     (first == 0xF0U && second < 0x90U) || (first == 0xF4U && second > 0x8FU);
+  return wrong ? 0 : n;
+}
+
+bool is_utf8(std::string_view text) {
+  while (!text.empty()) {
+    const std::size_t n = utf8_length(text);
+    if (n == 0) return false;
+    text.remove_prefix(n);
+  }
+  return true;
+}
+
+/// A text in Latin-1 (ISO 8859-1) as UTF-8.
+std::string from_latin_1(std::string_view text) {
+  std::string utf8;
+  for (const char c : text) {
+    const auto byte = static_cast<unsigned char>(c);
+    if (byte < 0x80U) {
+      utf8 += c;
+    } else {
+      utf8 += static_cast<char>(0xC0U | (byte >> 6U));
+      utf8 += static_cast<char>(0x80U | (byte & 0x3FU));
+    }
+  }
+  return utf8;
+}
+
 /// True for a number with the mark (',' or '.') as its only one.
 bool is_number_with(char mark, std::string_view cell) {
   if (cell.find(mark) == std::string_view::npos) return false;
@@ -182,8 +236,12 @@ std::optional<CsvTable> CsvTable::parse(std::string_view text, std::string name,
            "Export the sheet as \"CSV UTF-8\".");
     return std::nullopt;
   }
-  const char separator = find_separator(text);
+  const std::string converted = is_utf8(text) ? std::string() : from_latin_1(text);
+  if (!converted.empty()) text = converted;
+  const auto stated = stated_separator(text);
+  const char separator = stated ? *stated : find_separator(text);
   CellScanner scanner(text, separator);
+  if (stated) scanner.skip_line();
   int line = 0;
   if (!scanner.next(table.header_, line)) {
     refuse(0, "the table is empty", "the first row names the columns", "Check the export.");

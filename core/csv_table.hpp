@@ -12,8 +12,9 @@ namespace stillzone::core {
 
 /// A table as text cells, with what is needed to point at a cell. Reads what spreadsheets export:
 /// byte-order mark, comma / semicolon / tab as separator, decimal commas (with semicolon or tab),
-/// quoted cells, CRLF, blank lines, lines that start with '#'. Rows shorter or longer than the
-/// header (empty cells at the end aside) and quotes gone wrong are faults with their line.
+/// quoted cells, CRLF, blank lines, lines that start with '#', a first line "sep=;". Text that is
+/// no UTF-8 is taken as Latin-1, as older programs write it. Rows shorter or longer than the header
+/// (empty cells at the end aside) and quotes gone wrong are faults with their line.
 class CsvTable {
  public:
   [[nodiscard]] static std::optional<CsvTable> parse(std::string_view text, std::string name,

@@ -8,8 +8,8 @@
 
 namespace stillzone::network {
 
-/// Reads and cleans one entry of "samples": {"at", "csv", "time": {"column", "unit" | "dates"},
-/// "value": {"column", "unit"}, "error", "detection_limit"}.
+/// Reads and cleans one entry of "samples": {"at", "csv", "time": {"column", "unit" | "dates",
+/// "clock"}, "value": {"column", "unit"}, "error", "detection_limit"}.
 ///
 /// Censored are values written "<0.02", "nd", "<LOD", or below the detection limit: known only to
 /// be at most their limit. Rows without a time or value are left out. Samples of one time are

@@ -15,12 +15,13 @@ using core::Measure;
 using core::ObjectReader;
 using Need = ObjectReader::Need;
 
-std::optional<std::size_t> find_column(ObjectReader& reader, const core::CsvTable& table) {
-  const auto name = reader.text("column", Need::required);
+std::optional<std::size_t> find_column(ObjectReader& reader, const char* key,
+                                       const core::CsvTable& table) {
+  const auto name = reader.text(key, Need::required);
   if (!name) return std::nullopt;
   const auto column = table.column(*name);
   if (!column) {
-    reader.fault("column", "\"" + *name + "\"", table.name() + " has no such column",
+    reader.fault(key, "\"" + *name + "\"", table.name() + " has no such column",
                  core::name_hint(*name, table.header()));
   }
   return column;
@@ -45,8 +46,15 @@ std::optional<core::UnitReader::Scale> read_scale(ObjectReader& reader, Measure 
 }
 
 /// What the cells of a time column mean: a unit, or dates in a stated order.
-bool read_kind_of_time(ObjectReader& time, const TestClock& clock, TimeColumn& column) {
+bool read_kind_of_time(ObjectReader& time, const TestClock& clock, const core::CsvTable& table,
+                       TimeColumn& column) {
   if (!time.has("dates")) {
+    if (time.has("clock")) {
+      (void)time.raw("clock");
+      time.fault("clock", "\"clock\" without \"dates\"",
+                 "a time of day belongs to a column of dates",
+                 "Add \"dates\": \"day first\" (\"month first\", \"year first\").");
+    }
     if (!time.has("unit")) {
       (void)time.raw("unit");
       (void)time.raw("dates");
@@ -64,6 +72,10 @@ bool read_kind_of_time(ObjectReader& time, const TestClock& clock, TimeColumn& c
   if (order) column.dates = date_order_of(*order);
   column.epoch = clock.epoch();
   bool fine = order.has_value();
+  if (time.has("clock")) {
+    column.clock = find_column(time, "clock", table);
+    fine = fine && column.clock;
+  }
   if (time.has("unit")) {
     (void)time.raw("unit");
     time.fault("", "\"unit\" and \"dates\"", "times are elapsed or dates, not both",
@@ -111,14 +123,14 @@ std::optional<TimeAndValue> read_time_and_value(ObjectReader& reader, const Test
   bool fine = true;
   auto time = reader.object("time", Need::required);
   if (time) {
-    const auto number = find_column(*time, table);
+    const auto number = find_column(*time, "column", table);
     if (number) columns.time.number = *number;
-    fine = read_kind_of_time(*time, clock, columns.time) && number;
+    fine = read_kind_of_time(*time, clock, table, columns.time) && number;
     time->finish();
   }
   auto value = reader.object("value", Need::required);
   if (value) {
-    const auto number = find_column(*value, table);
+    const auto number = find_column(*value, "column", table);
     const auto scale = read_scale(*value, measure);
     if (number) columns.value.number = *number;
     if (scale) columns.value.scale = *scale;
@@ -140,15 +152,26 @@ std::optional<double> CellReader::time(std::size_t row, const TimeColumn& column
     if (!cell) return std::nullopt;
     return *cell * column.scale.scale + column.scale.offset;
   }
-  const std::string_view cell = table_.cell(row, column.number);
-  if (cell.find_first_not_of(' ') == std::string_view::npos || cell == "-" || cell == "NA") {
-    return std::nullopt;
+  const auto is_missing = [](std::string_view text) {
+    return text.find_first_not_of(' ') == std::string_view::npos || text == "-" || text == "NA";
+  };
+  std::string cell(table_.cell(row, column.number));
+  if (is_missing(cell)) return std::nullopt;
+  if (column.clock) {
+    // A day without its hour is no time of a sample.
+    if (is_missing(table_.cell(row, *column.clock))) return std::nullopt;
+    cell += " ";
+    cell += table_.cell(row, *column.clock);
   }
   const auto days = read_date_time(cell, *column.dates);
   if (!days) {
-    refuse(row, column.number,
-           fmt::format("a date and time belongs here, \"{}\"", date_order_name(*column.dates)),
-           date_time_way_out(cell, *column.dates));
+    found_.add({.file = table_.name(),
+                .pointer = "column " + table_.header()[column.number],
+                .line = table_.line(row),
+                .found = "\"" + cell + "\"",
+                .allowed = fmt::format("a date and time belongs here, \"{}\"",
+                                       date_order_name(*column.dates)),
+                .way_out = date_time_way_out(cell, *column.dates)});
     return std::nullopt;
   }
   return *days - column.epoch;

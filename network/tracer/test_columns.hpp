@@ -28,12 +28,14 @@ class TestClock {
   double epoch_ = 0.0;
 };
 
-/// A column of times, {"column", "unit"} or {"column", "dates": "day first"}.
+/// A column of times, {"column", "unit"} or {"column", "dates": "day first"}; with dates, the time
+/// of day may stand in a column of its own, "clock".
 struct TimeColumn {
   std::size_t number = 0;
-  core::UnitReader::Scale scale;   ///< cell -> [d] of model time
-  std::optional<DateOrder> dates;  ///< cells are dates; scale plays no part
-  double epoch = 0.0;              ///< [d] since 1970 of model time 0
+  std::optional<std::size_t> clock;  ///< column of the time of day
+  core::UnitReader::Scale scale;     ///< cell -> [d] of model time
+  std::optional<DateOrder> dates;    ///< cells are dates; scale plays no part
+  double epoch = 0.0;                ///< [d] since 1970 of model time 0
 };
 /// A column of values, {"column", "unit"}.
 struct ValueColumn {

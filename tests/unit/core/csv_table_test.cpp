@@ -43,6 +43,27 @@ TEST(CsvTable, PassesOverByteOrderMarkCommentsAndBlankLines) {
   EXPECT_EQ(t.line(1), 7);
 }
 
+TEST(CsvTable, AFirstLineMayStateTheSeparator) {
+  const CsvTable t = table("\xEF\xBB\xBFsep=;\r\na,x;b\r\n1,5;2\r\n");
+  EXPECT_EQ(t.header(), (std::vector<std::string>{"a,x", "b"}));
+  EXPECT_DOUBLE_EQ(number(t, 0, 0), 1.5);
+  EXPECT_EQ(t.line(0), 3);
+  EXPECT_EQ(table("sep=x\n1\n").header().front(), "sep=x");
+}
+
+TEST(CsvTable, TextThatIsNoUtf8IsTakenAsLatin1) {
+  EXPECT_EQ(table("t,li [\xB5g/L]\n1,\xFC\n").header()[1], "li [\xC2\xB5g/L]");
+  EXPECT_EQ(table("t,li [\xB5g/L]\n1,\xFC\n").cell(0, 1), "\xC3\xBC");
+  // What is UTF-8 already stays: two, three and four bytes.
+  const std::string utf8 = "\xC2\xB5 \xE2\x82\xAC \xF0\x9F\x92\xA7";
+  EXPECT_EQ(table("a,b\n1," + utf8 + "\n").cell(0, 1), utf8);
+  // Overlong, a surrogate, beyond the last code point, cut off: none of them is UTF-8.
+  for (const char* wrong :
+       {"\xC0\x80", "\xE0\x80\x80", "\xED\xA0\x80", "\xF4\x90\x80\x80", "\xC3"}) {
+    EXPECT_NE(table(std::string("a,b\n1,") + wrong).cell(0, 1), wrong);
+  }
+}
+
 TEST(CsvTable, QuotedCellsKeepSeparatorsQuotesAndLineEnds) {
   const CsvTable t = table("a,b\n\"x, \"\"y\"\"\nz\",2\n");
   EXPECT_EQ(t.cell(0, 0), "x, \"y\"\nz");

@@ -235,6 +235,22 @@ TEST(TracerTestReader, DatesCountFromTheDose) {
   EXPECT_NEAR(reading.test->points[0].before[0].time, -1.0, 1e-9);
 }
 
+TEST(TracerTestReader, TheTimeOfDayMayStandInAColumnOfItsOwn) {
+  const char* const point =
+      R"({"time": {"column": "day", "clock": "hour", "unit": null, "dates": "month first"}})";
+  const char* const dose = R"({"dose": {"at": "2026-03-02 08:00"}})";
+  const auto reading =
+      read_outlet("day,hour,c\n3/2/2026,8:00 PM,8\n3/3/2026,,9\n3/4/2026,08:00,6\n", dose, point);
+  ASSERT_TRUE(reading.test) << reading.faults;
+  ASSERT_EQ(times(reading).size(), 2U);
+  EXPECT_NEAR(times(reading)[0], 0.5, 1e-9);
+  EXPECT_NEAR(times(reading)[1], 2.0, 1e-9);
+  EXPECT_THAT(read_outlet("day,hour,c\n3/2/2026,8.00,8\n", dose, point).faults,
+              HasSubstr("outlet.csv column day (line 2): \"3/2/2026 8.00\"; a date and time"));
+  EXPECT_THAT(read_outlet("t,c\n1,8\n", "{}", R"({"time": {"clock": "c"}})").faults,
+              HasSubstr("a time of day belongs to a column of dates"));
+}
+
 TEST(TracerTestReader, ElapsedTimesBesideADatedDoseCountFromIt) {
   const auto reading = read_outlet("t,c\n1,8\n", R"({"dose": {"at": "2026-03-02 08:00"}})");
   ASSERT_TRUE(reading.test) << reading.faults;
