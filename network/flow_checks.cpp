@@ -339,8 +339,7 @@ void FlowChecks::negatives(const FlowEquations& equations, std::span<const doubl
     collect(flow.to);
     std::erase_if(given, [&](std::size_t other) { return !case_.flows[other].given; });
     std::ranges::sort(given);
-    const auto repeated = std::ranges::unique(given);
-    given.erase(repeated.begin(), repeated.end());
+    given.erase(std::unique(given.begin(), given.end()), given.end());
     std::string way_out;
     if (turns && (when.empty() || when == kOnAverage))
       way_out = "Swap \"from\" and \"to\" to turn it round";

@@ -113,9 +113,10 @@ std::optional<ExponentialTail> fit_exponential_tail(std::span<const FallingPoint
   constexpr double kWellKnown = 0.1;
   if (points.size() < kFewest) return std::nullopt;
   std::optional<ExponentialTail> best;
-  for (std::size_t n = std::min(kUsual, points.size()); n <= points.size(); ++n) {
+  for (std::size_t n = std::min(kUsual, points.size());; n = std::min(n + n / 4, points.size())) {
     best = fit_window(points.last(n));
     if (best && best->rate_error <= kWellKnown * best->rate) return best;
+    if (n == points.size()) break;
   }
   if (best && best->rate <= 2.0 * best->rate_error) return std::nullopt;
   return best;

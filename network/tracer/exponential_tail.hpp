@@ -24,10 +24,10 @@ struct ExponentialTail {
   [[nodiscard]] double height_at(double age) const;
 };
 
-/// Weighted least squares of an exponential to the last points: as few as tell the rate to 10 %, at
-/// least 6, at most all (3 suffice when there are no more). The heights themselves are fitted, not
-/// their logarithms, so that points near and below zero pull neither way. Empty when the points do
-/// not fall: rate - 2 rate_error <= 0 even with all of them.
+/// Weighted least squares of an exponential to the last points: about as few as tell the rate to 10
+/// %, at least 6, at most all (3 suffice when there are no more). The heights themselves are
+/// fitted, not their logarithms, so that points near and below zero pull neither way. Empty when
+/// the points do not fall: rate - 2 rate_error <= 0 even with all of them.
 [[nodiscard]] std::optional<ExponentialTail> fit_exponential_tail(
     std::span<const FallingPoint> points);
 

@@ -15,22 +15,29 @@ struct Approach {
 };
 
 Approach approach_at(const NetCurve& curve, std::size_t first, double rate) {
-  Eigen::Matrix2d normal = Eigen::Matrix2d::Zero();
-  Eigen::Vector2d right = Eigen::Vector2d::Zero();
+  // Normal equations of columns 1 and -exp(-rate x), right side C, square sum of C.
+  double n11 = 0.0;
+  double n12 = 0.0;
+  double n22 = 0.0;
+  double r1 = 0.0;
+  double r2 = 0.0;
   for (std::size_t i = first; i < curve.size(); ++i) {
-    const double weight = 1.0 / curve.error[i];
-    const Eigen::Vector2d row(weight,
-                              -weight * std::exp(-rate * (curve.age[i] - curve.age[first])));
-    normal += row * row.transpose();
-    right += row * (weight * curve.height[i]);
+    const double weight = 1.0 / (curve.error[i] * curve.error[i]);
+    const double column = -std::exp(-rate * (curve.age[i] - curve.age[first]));
+    n11 += weight;
+    n12 += weight * column;
+    n22 += weight * column * column;
+    r1 += weight * curve.height[i];
+    r2 += weight * column * curve.height[i];
   }
-  if (!(normal.determinant() > 1e-14 * normal(0, 0) * normal(1, 1))) return {};
-  const Eigen::Vector2d solution = normal.inverse() * right;
-  Approach approach{solution(0), solution(1), 0.0};
+  const double determinant = n11 * n22 - n12 * n12;
+  if (!(determinant > 1e-14 * n11 * n22)) return {};
+  Approach approach{(n22 * r1 - n12 * r2) / determinant, (n11 * r2 - n12 * r1) / determinant, 0.0};
   for (std::size_t i = first; i < curve.size(); ++i) {
     const double model =
         approach.level - approach.drop * std::exp(-rate * (curve.age[i] - curve.age[first]));
-    approach.square_sum += std::pow((curve.height[i] - model) / curve.error[i], 2);
+    const double residual = (curve.height[i] - model) / curve.error[i];
+    approach.square_sum += residual * residual;
   }
   return approach;
 }
@@ -53,24 +60,43 @@ double level_error(const NetCurve& curve, std::size_t first, double rate, const 
 
 /// The rate with the least square sum, by a scan and a golden section between its neighbours.
 double best_rate(const NetCurve& curve, std::size_t first) {
-  constexpr int kScan = 60;
+  constexpr int kScan = 40;
   const double span = curve.age.back() - curve.age[first];
   const auto rate_of = [span](double s) {
     return std::exp(std::log(0.2 / span) + s * std::log(500.0));
   };
   const auto cost = [&](double s) { return approach_at(curve, first, rate_of(s)).square_sum; };
   double best = 0.0;
+  double least = cost(best);
   for (int k = 1; k <= kScan; ++k) {
     const double s = static_cast<double>(k) / kScan;
-    if (cost(s) < cost(best)) best = s;
+    const double here = cost(s);
+    if (here < least) {
+      best = s;
+      least = here;
+    }
   }
   double low = std::max(best - 1.0 / kScan, 0.0);
   double high = std::min(best + 1.0 / kScan, 1.0);
   const double golden = 0.5 * (std::sqrt(5.0) - 1.0);
-  for (int k = 0; k < 60; ++k) {
-    const double a = high - golden * (high - low);
-    const double b = low + golden * (high - low);
-    (cost(a) < cost(b) ? high : low) = cost(a) < cost(b) ? b : a;
+  double a = high - golden * (high - low);
+  double b = low + golden * (high - low);
+  double cost_a = cost(a);
+  double cost_b = cost(b);
+  for (int k = 0; k < 30; ++k) {  // to 1e-7 of ln(rate): the level needs no more
+    if (cost_a < cost_b) {
+      high = b;
+      b = a;
+      cost_b = cost_a;
+      a = high - golden * (high - low);
+      cost_a = cost(a);
+    } else {
+      low = a;
+      a = b;
+      cost_a = cost_b;
+      b = low + golden * (high - low);
+      cost_b = cost(b);
+    }
   }
   return rate_of(0.5 * (low + high));
 }

@@ -3,12 +3,15 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <optional>
+#include <random>
 #include <utility>
 
 #include "network/tracer/exponential_tail.hpp"
 #include "network/tracer/net_curve.hpp"
+#include "network/tracer/pulse_nodes.hpp"
 #include "network/tracer/step_response.hpp"
 #include "network/tracer/tracer_verdict.hpp"
 
@@ -50,62 +53,6 @@ std::string unusable(const NetCurve& measured) {
   return {};
 }
 
-/// Samples with a number from the peak on.
-std::vector<FallingPoint> after_peak(const NetCurve& curve) {
-  std::vector<FallingPoint> points;
-  for (std::size_t i = curve.peak() + 1; i < curve.size(); ++i) {
-    if (!curve.censored(i)) points.push_back({curve.age[i], curve.height[i], curve.error[i]});
-  }
-  return points;
-}
-
-/// Nodes of a pulse curve from the dose to where next to nothing is left.
-struct PulseNodes {
-  std::vector<double> age;
-  std::vector<double> height;
-};
-
-/// From the dose to the first sample: a curve that rises there started at 0, as behind any delay or
-/// second tank; one that falls was level, for how high a short circuit rose nobody saw.
-void start_at_dose(const NetCurve& curve, PulseNodes& nodes) {
-  if (curve.age.front() <= 0.0) return;
-  const double first = curve.height.front();
-  const std::size_t last_looked_at = std::min<std::size_t>(3, curve.size() - 1);
-  bool rises = first <= 0.0;
-  for (std::size_t i = 1; i <= last_looked_at; ++i) {
-    rises = rises || curve.height[i] - first > 2.0 * std::hypot(curve.error[i], curve.error[0]);
-  }
-  nodes.age.push_back(0.0);
-  nodes.height.push_back(rises ? 0.0 : first);
-}
-
-/// The samples, those under the limit after the last number on the tail (at their limit at most).
-PulseNodes pulse_nodes(const NetCurve& curve, const std::optional<ExponentialTail>& tail) {
-  PulseNodes nodes;
-  start_at_dose(curve, nodes);
-  std::size_t last_number = curve.size();
-  while (curve.censored(last_number - 1)) --last_number;
-  for (std::size_t i = 0; i < curve.size(); ++i) {
-    nodes.age.push_back(curve.age[i]);
-    const bool on_tail = tail && i >= last_number;
-    nodes.height.push_back(on_tail ? std::min(tail->height_at(curve.age[i]), curve.room[i])
-                                   : curve.height[i]);
-  }
-  return nodes;
-}
-
-/// Adds nodes along the exponential until next to nothing is left under it.
-void append_tail(const ExponentialTail& tail, double start_height, PulseNodes& nodes) {
-  constexpr int kNodes = 320;
-  constexpr double kLengths = 16.0;  // e^-16 of the tail is left out; the steps add 2e-4 to it
-  const double start = nodes.age.back();
-  for (int k = 1; k <= kNodes; ++k) {
-    const double x = kLengths * k / kNodes;
-    nodes.age.push_back(start + x / tail.rate);
-    nodes.height.push_back(start_height * std::exp(-x));
-  }
-}
-
 /// A curve ready to be integrated, and what was assumed on the way.
 struct ReadyCurve {
   std::vector<double> age;
@@ -114,18 +61,6 @@ struct ReadyCurve {
   double step_level = 0.0;  ///< [g/m3] of a step test
   bool plateau_reached = true;
 };
-
-/// The exponential after the peak, unless the last number lies clearly below it: then the curve has
-/// ended, and a tail would be made up.
-std::optional<ExponentialTail> believable_tail(const NetCurve& curve) {
-  const std::vector<FallingPoint> points = after_peak(curve);
-  const auto fitted = fit_exponential_tail(points);
-  if (!fitted) return std::nullopt;
-  const FallingPoint& last = points.back();
-  const bool below = fitted->height - last.height > 3.0 * last.error;
-  if (below && last.height < 0.5 * fitted->height) return std::nullopt;
-  return fitted;
-}
 
 ReadyCurve ready_pulse(const NetCurve& measured, IntegrationRule rule) {
   ReadyCurve ready;
@@ -199,6 +134,117 @@ std::optional<double> mean_with(const TracerTest& test, const SamplingPoint& poi
   return ResidenceCurve(nodes.age, nodes.height, IntegrationRule::straight_lines).mean();
 }
 
+struct Evaluated {
+  TracerTail tail;
+  double recovery = 0.0;
+  double area = 0.0;
+  double mean = 0.0;
+  double variance = 0.0;  ///< may be below zero here
+  double t10 = 0.0;
+  double t50 = 0.0;
+  double t90 = 0.0;
+  bool plateau_reached = true;
+  ResidenceCurve curve;
+};
+
+/// Length [d] of age that the dose took.
+double dose_length(const TracerTest& test) {
+  const auto* pulse = std::get_if<PulseDose>(&test.dose);
+  if (pulse == nullptr) return 0.0;
+  return test.turnovers(test.dose_at + pulse->duration) * test.volume.value() /
+         test.mean_flow.value();
+}
+
+/// The numbers of one net curve, or why there are none.
+core::Result<Evaluated> evaluate(const TracerTest& test, const NetCurve& measured,
+                                 IntegrationRule rule) {
+  const auto* pulse = std::get_if<PulseDose>(&test.dose);
+  ReadyCurve ready = pulse != nullptr ? ready_pulse(measured, rule) : ready_step(measured, test);
+  if (pulse == nullptr) rule = IntegrationRule::straight_lines;
+  if (pulse == nullptr && !(ready.step_level > 0.0)) {
+    return core::Failure{.reason = "the last samples of the step do not lie above the background"};
+  }
+  if (rule == IntegrationRule::equal_step_sum && !equally_spaced(ready.age)) {
+    return core::Failure{
+        .reason = "the equal-step sum needs equal steps from the dose on, counted in turnovers"};
+  }
+  const double length = dose_length(test);
+  ResidenceCurve curve(std::move(ready.age), std::move(ready.height), rule);
+  const auto quantile = [&](double share) {
+    return std::max(curve.quantile(share) - 0.5 * length, 0.0);
+  };
+  Evaluated numbers{
+      .tail = std::move(ready.tail),
+      // Mass out = integral of Q C dt = mean flow x area, for a record too: age counts its water.
+      .recovery = pulse != nullptr ? curve.area() * test.mean_flow.value() / pulse->mass
+                                   : ready.step_level / std::get<StepDose>(test.dose).concentration,
+      .area = curve.area(),
+      .mean = curve.mean() - 0.5 * length,
+      .variance = curve.variance() - length * length / 12.0,
+      .t10 = quantile(0.1),
+      .t50 = quantile(0.5),
+      .t90 = quantile(0.9),
+      .plateau_reached = ready.plateau_reached,
+      .curve = curve,
+  };
+  if (numbers.tail.rate > 0.0) {
+    numbers.tail.share = std::max(1.0 - curve.cumulative_at(measured.age.back()), 0.0);
+  }
+  return numbers;
+}
+
+/// Mean and mean square as they come.
+class Scatter {
+ public:
+  void add(double x) {
+    ++n_;
+    const double step = x - mean_;
+    mean_ += step / n_;
+    square_ += step * (x - mean_);
+  }
+  [[nodiscard]] double deviation() const { return n_ > 1 ? std::sqrt(square_ / (n_ - 1)) : 0.0; }
+
+ private:
+  int n_ = 0;
+  double mean_ = 0.0;
+  double square_ = 0.0;
+};
+
+/// The samples again and again with their errors laid on once more, those under the limit anywhere
+/// below it: how far the numbers scatter. The seed is fixed, so that a test always reads the same.
+MomentErrors moment_errors(const TracerTest& test, const NetCurve& measured, IntegrationRule rule) {
+  constexpr int kDraws = 200;  // a standard deviation is then known to 5 %
+  std::mt19937_64 random(1);
+  std::normal_distribution<double> normal;
+  std::uniform_real_distribution<double> uniform(0.0, 1.0);
+  std::array<Scatter, 6> scatter;
+  MomentErrors errors;
+  for (int draw = 0; draw < kDraws; ++draw) {
+    NetCurve drawn = measured;
+    for (std::size_t i = 0; i < drawn.size(); ++i) {
+      if (!drawn.censored(i)) drawn.height[i] += drawn.error[i] * normal(random);
+      if (drawn.censored(i) && drawn.height[i] > 0.0) {
+        drawn.height[i] = drawn.room[i] * uniform(random);
+      }
+    }
+    if (!unusable(drawn).empty()) continue;
+    const auto evaluated = evaluate(test, drawn, rule);
+    if (!evaluated.ok()) continue;
+    const Evaluated& numbers = evaluated.value();
+    ++errors.n_draws;
+    const std::array<double, 6> all = {numbers.recovery, numbers.mean, numbers.variance,
+                                       numbers.t10,      numbers.t50,  numbers.t90};
+    for (std::size_t k = 0; k < all.size(); ++k) scatter[k].add(all[k]);
+  }
+  errors.recovery = scatter[0].deviation();
+  errors.mean = scatter[1].deviation();
+  errors.variance = scatter[2].deviation();
+  errors.t10 = scatter[3].deviation();
+  errors.t50 = scatter[4].deviation();
+  errors.t90 = scatter[5].deviation();
+  return errors;
+}
+
 }  // namespace
 
 core::Result<TracerMoments> tracer_moments(const TracerTest& test, const SamplingPoint& point,
@@ -208,50 +254,36 @@ core::Result<TracerMoments> tracer_moments(const TracerTest& test, const Samplin
   if (const std::string reason = unusable(measured); !reason.empty()) {
     return too_little(point, reason);
   }
-  const auto* pulse = std::get_if<PulseDose>(&test.dose);
-  ReadyCurve ready = pulse != nullptr ? ready_pulse(measured, rule) : ready_step(measured, test);
-  if (pulse == nullptr) rule = IntegrationRule::straight_lines;
-  if (rule == IntegrationRule::equal_step_sum && !equally_spaced(ready.age)) {
-    return too_little(
-        point, "the equal-step sum needs equal steps from the dose on, counted in turnovers");
-  }
-  const ResidenceCurve residence(std::move(ready.age), std::move(ready.height), rule);
-  const double dose_length =
-      pulse != nullptr ? test.turnovers(test.dose_at + pulse->duration) * tau : 0.0;
-  const auto quantile = [&](double share) {
-    return std::max(residence.quantile(share) - 0.5 * dose_length, 0.0);
-  };
-  const double variance = residence.variance() - dose_length * dose_length / 12.0;
+  auto evaluated = evaluate(test, measured, rule);
+  if (!evaluated.ok()) return too_little(point, evaluated.failure().reason);
+  Evaluated& numbers = evaluated.value();
   TracerMoments moments{
       .hydraulic_retention_time = tau,
-      // Mass out = integral of Q C dt = mean flow x area, for a record too: age counts its water.
-      .recovery = pulse != nullptr ? residence.area() * test.mean_flow.value() / pulse->mass
-                                   : ready.step_level / std::get<StepDose>(test.dose).concentration,
-      .area = residence.area(),
-      .mean = residence.mean() - 0.5 * dose_length,
-      .variance = std::max(variance, 0.0),
-      .t10 = quantile(0.1),
-      .t50 = quantile(0.5),
-      .t90 = quantile(0.9),
-      .tail = std::move(ready.tail),
-      .curve = residence,
+      .recovery = numbers.recovery,
+      .area = numbers.area,
+      .mean = numbers.mean,
+      .variance = std::max(numbers.variance, 0.0),
+      .active_fraction = numbers.mean / tau,
+      .t10 = numbers.t10,
+      .t50 = numbers.t50,
+      .t90 = numbers.t90,
+      .baffling = numbers.t10 / tau,
+      .tail = std::move(numbers.tail),
+      .curve = numbers.curve,
+      .errors = moment_errors(test, measured, rule),
       .verdict = {},
   };
-  moments.before_first_sample = std::max(residence.cumulative_at(measured.age.front()), 0.0);
-  if (moments.tail.rate > 0.0) {
-    moments.tail.share = std::max(1.0 - residence.cumulative_at(measured.age.back()), 0.0);
-  }
-  moments.active_fraction = moments.mean / tau;
+  moments.before_first_sample = std::max(moments.curve.cumulative_at(measured.age.front()), 0.0);
   constexpr double kNoTime = 1e-3;  // of V/Q: t90/t10 is then in the thousands and says nothing
   moments.morrill = moments.t10 > kNoTime * tau ? moments.t90 / moments.t10 : 0.0;
-  moments.baffling = moments.t10 / tau;
   VerdictEvidence evidence{.test = test,
                            .measured = measured,
-                           .dose_length = dose_length,
-                           .plateau_reached = ready.plateau_reached,
-                           .variance_was_below_zero = variance < 0.0};
+                           .dose_length = dose_length(test),
+                           .plateau_reached = numbers.plateau_reached,
+                           .variance_was_below_zero = numbers.variance < 0.0};
   const auto is_censored = [](double room) { return room >= 0.0; };
-  if (pulse != nullptr && std::any_of(measured.room.begin(), measured.room.end(), is_censored)) {
+  if (std::holds_alternative<PulseDose>(test.dose) &&
+      std::any_of(measured.room.begin(), measured.room.end(), is_censored)) {
     evidence.mean_low = mean_with(test, point, 0.0);
     evidence.mean_high = mean_with(test, point, 1.0);
   }

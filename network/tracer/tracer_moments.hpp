@@ -17,6 +17,18 @@ struct TracerTail {
   std::string note;         ///< how it was fitted, or why there is none
 };
 
+/// Standard deviations from the errors of the samples alone, by drawing the samples again; those of
+/// dose, flow, volume and background come on top. Zero draws: nothing could be said.
+struct MomentErrors {
+  double recovery = 0.0;  ///< [1]
+  double mean = 0.0;      ///< [d]
+  double variance = 0.0;  ///< [d2]
+  double t10 = 0.0;       ///< [d]
+  double t50 = 0.0;       ///< [d]
+  double t90 = 0.0;       ///< [d]
+  int n_draws = 0;        ///< of 200, that gave a curve
+};
+
 /// What the samples say without any model. Ages [d] are turnovers since the dose times V/Q; of a
 /// dose that took time, half its length is taken off mean and t10, t50, t90 (exact for the mean, to
 /// first order for the others), its length squared / 12 off the variance. `curve` still has it.
@@ -40,7 +52,8 @@ struct TracerMoments {
   double baffling = 0.0;  ///< [1] t10/hydraulic_retention_time
   double before_first_sample = 0.0;  ///< [1] share of the area assumed before the first sample
   TracerTail tail;
-  ResidenceCurve curve;              ///< ages [d], tail included
+  ResidenceCurve curve;  ///< ages [d], tail included
+  MomentErrors errors;
   std::vector<std::string> verdict;  ///< on the data, in plain sentences, gravest first
 };
 

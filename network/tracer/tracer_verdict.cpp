@@ -251,6 +251,44 @@ void judge_sampling(const TracerMoments& moments, const VerdictEvidence& evidenc
   }
 }
 
+/// What the peak hangs on, and how steady the flow was.
+void judge_peak_and_flow(const TracerMoments& moments, const VerdictEvidence& evidence,
+                         Sentences& sentences) {
+  const NetCurve& measured = evidence.measured;
+  const std::size_t peak = measured.peak();
+  if (std::holds_alternative<PulseDose>(evidence.test.dose) && peak < measured.size()) {
+    const double from = peak > 0 ? measured.age[peak - 1] : 0.0;
+    const double until = measured.age[std::min(peak + 1, measured.size() - 1)];
+    const double share = 0.5 * (until - from) * measured.height[peak] / moments.area;
+    if (share > 0.3) {
+      sentences.add(
+          Weight::minor,
+          fmt::format("{:.0f} % of the tracer hang on the one sample at the peak: recovery "
+                      "and t10 are as good as that sample.",
+                      100.0 * share));
+    }
+  }
+  if (!evidence.test.flow_record) return;
+  const core::Timeline& flow = *evidence.test.flow_record;
+  const double last = evidence.test.time_at(measured.age.back() / moments.hydraulic_retention_time);
+  double low = flow.value_from(evidence.test.dose_at);
+  double high = low;
+  for (auto next = flow.next_switch(evidence.test.dose_at); next && *next < last;
+       next = flow.next_switch(*next)) {
+    low = std::min(low, flow.value_from(*next));
+    high = std::max(high, flow.value_from(*next));
+  }
+  if (high > 1.5 * low) {
+    sentences.add(
+        Weight::minor,
+        fmt::format("The flow went from {:.4g} to {:.4g} m3/d during the test; ages are "
+                    "counted in turnovers, which is exact only where the flows inside the "
+                    "tank go with the feed. Where mixers drive them, trust the fits of the "
+                    "networks more than these numbers.",
+                    low, high));
+  }
+}
+
 void judge_mean(const TracerMoments& moments, const VerdictEvidence& evidence,
                 Sentences& sentences) {
   if (moments.active_fraction > 1.1) {
@@ -284,6 +322,7 @@ std::vector<std::string> tracer_verdict(const TracerMoments& moments,
   judge_mean(moments, evidence, sentences);
   judge_limits(moments, evidence, sentences);
   judge_sampling(moments, evidence, sentences);
+  judge_peak_and_flow(moments, evidence, sentences);
   return std::move(sentences).gravest_first();
 }
 

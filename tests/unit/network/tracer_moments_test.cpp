@@ -137,6 +137,32 @@ TEST(TracerMoments, ANoisyTailIsNotPulledUpByWhatSurvivesTheNoise) {
   EXPECT_NEAR(recovery, 1.0, 0.01);
 }
 
+TEST(TracerMoments, StatedErrorsCoverTheTruthAsOftenAsTheyShould) {
+  // 25 samples to three turnovers, closer at first; 3 % and 0.02 g/m3.
+  int n_mean = 0;
+  int n_recovery = 0;
+  int n_t90 = 0;
+  constexpr int kTests = 200;
+  for (unsigned seed = 1; seed <= kTests; ++seed) {
+    SamplingPoint point;
+    for (int i = 0; i <= 24; ++i) {
+      const double t = 60.0 * std::pow(i / 24.0, 1.5);
+      point.samples.push_back(
+          {.time = t, .value = tank(t), .error = std::hypot(0.02, 0.03 * tank(t))});
+    }
+    add_noise(point, seed);
+    const TracerMoments m = moments_of(pulse_test(), point);
+    n_mean += std::abs(m.mean - kHrt) < 1.96 * m.errors.mean ? 1 : 0;
+    n_recovery += std::abs(m.recovery - 1.0) < 1.96 * m.errors.recovery ? 1 : 0;
+    n_t90 += std::abs(m.t90 - kHrt * std::log(10.0)) < 1.96 * m.errors.t90 ? 1 : 0;
+  }
+  // 95 % of 200 are 190, give or take 3; three times that.
+  for (const int n : {n_mean, n_recovery, n_t90}) {
+    EXPECT_GE(n, 181);
+    EXPECT_LE(n, 199);
+  }
+}
+
 TEST(TracerMoments, ACurveThatEndsBeforeItsExponentialGetsNoTail) {
   const auto box = [](double t) { return t < 10.0 ? 4.0 : t < 20.0 ? 8.0 - 0.4 * t : 0.0; };
   const TracerMoments m = moments_of(pulse_test(), sampled(every(2.0, 24.0), box, 0.05));
@@ -379,6 +405,23 @@ TEST(TracerVerdict, TwoHumpsAreTwoPathsNotNoise) {
   SamplingPoint one = sampled(every(1.0, 60.0), tank, 0.15);
   add_noise(one, 3);
   EXPECT_THAT(moments_of(pulse_test(), one).verdict, Each(Not(HasSubstr("rises again"))));
+}
+
+TEST(TracerVerdict, APeakOfOneSampleIsTold) {
+  const auto spike = [](double t) { return t < 4.5 && t > 3.5 ? 20.0 : 2.0 * std::exp(-t / 10.0); };
+  const TracerMoments m = moments_of(pulse_test(), sampled(every(2.0, 60.0), spike, 0.02));
+  // 20 g/m3 x 2 d beside 2 g/m3 x 10 d of the rest.
+  EXPECT_THAT(m.verdict, Contains(HasSubstr("% of the tracer hang on the one sample")));
+  EXPECT_THAT(moments_of(pulse_test(), sampled(every(1.0, 60.0), tank, 0.02)).verdict,
+              Each(Not(HasSubstr("hang on"))));
+}
+
+TEST(TracerVerdict, AnUnsteadyFlowIsTold) {
+  TracerTest test = pulse_test();
+  test.flow_record = core::Timeline::steps({0.0, 20.0}, {100.0, 200.0});
+  test.mean_flow = core::FlowRate(test.flow_record->mean(0.0, 80.0));
+  EXPECT_THAT(moments_of(test, sampled(every(1.0, 80.0), tank, 0.02)).verdict,
+              Contains(HasSubstr("The flow went from 100 to 200 m3/d")));
 }
 
 TEST(TracerVerdict, ATestThatEndsAtItsPeakIsTold) {
