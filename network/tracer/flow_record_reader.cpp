@@ -86,7 +86,12 @@ std::optional<core::Timeline> read_flow_record(ObjectReader& reader, const TestC
     std::stable_sort(rows.begin(), rows.end(), earlier);
   }
   refuse_double_times(rows, *table, faults);
+  (void)plausible_first_time(rows.front().time, rows.front().line, columns->time, dose_at, *table,
+                             faults);
   if (faults.all().size() > n_before) return std::nullopt;
+  if (clock.dated() && !columns->time.dates) {
+    notes.push_back(*path + ": its elapsed times are counted from the dose");
+  }
   if (rows.front().time > dose_at) {
     notes.push_back(
         fmt::format("{}: the record starts {:.3g} d after the dose; its first flow is taken before "

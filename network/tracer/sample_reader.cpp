@@ -237,25 +237,6 @@ void set_errors(std::vector<TracerSample>& samples, const ErrorModel& error, Obj
   }
 }
 
-/// A serial day number where elapsed time was announced, or a unit far too large.
-bool plausible_times(const std::vector<TracerSample>& samples, const TimeColumn& column,
-                     double dose_at, const core::CsvTable& table, core::FaultList& faults) {
-  if (column.dates || samples.empty()) return true;
-  const auto first = std::min_element(
-      samples.begin(), samples.end(),
-      [](const TracerSample& a, const TracerSample& b) { return a.time < b.time; });
-  const auto day = serial_day(first->time);
-  if (!day || serial_day(dose_at)) return true;
-  faults.add({.file = table.name(),
-              .pointer = "column " + table.header()[column.number],
-              .line = first->line,
-              .found = fmt::format("{:g} d as the first time", first->time),
-              .allowed = fmt::format("this looks like a spreadsheet's day number (for {})", *day),
-              .way_out = "Give the column the format yyyy-mm-dd hh:mm, export it again and write "
-                         "\"dates\": \"year first\" in place of \"unit\"."});
-  return false;
-}
-
 std::vector<TracerSample> read_rows(const core::CsvTable& table, const TimeAndValue& columns,
                                     core::FaultList& faults, SamplingPoint& point) {
   CellReader cells(table);
@@ -290,7 +271,10 @@ void read_samples(ObjectReader& reader, const core::CsvTable& table, const TimeA
                  "Check the columns.");
     return;
   }
-  if (!plausible_times(samples, columns.time, dose_at, table, faults)) return;
+  const auto first = std::min_element(
+      samples.begin(), samples.end(),
+      [](const TracerSample& a, const TracerSample& b) { return a.time < b.time; });
+  if (!plausible_first_time(first->time, first->line, columns.time, dose_at, table, faults)) return;
   set_errors(samples, error, reader, point);
   order_and_merge(samples, point);
   for (const TracerSample& sample : samples) {

@@ -84,7 +84,7 @@ bool read_kind_of_time(ObjectReader& time, const TestClock& clock, const core::C
   }
   if (!clock.dated() && !clock.unreadable()) {
     time.fault("dates", core::shown(*time.raw("dates")),
-               "where samples have dates, the dose's \"at\" is a date too",
+               "where times are dates, the dose's \"at\" is a date too",
                "Write \"at\": \"2026-03-02 08:00\" in \"dose\".");
     fine = false;
   }
@@ -189,6 +189,21 @@ void CellReader::refuse(std::size_t row, std::size_t column, std::string allowed
               .found = fmt::format("\"{}\"", table_.cell(row, column)),
               .allowed = std::move(allowed),
               .way_out = std::move(way_out)});
+}
+
+bool plausible_first_time(double first, int line, const TimeColumn& column, double dose_at,
+                          const core::CsvTable& table, core::FaultList& faults) {
+  if (column.dates || serial_day(dose_at)) return true;
+  const auto day = serial_day(first);
+  if (!day) return true;
+  faults.add({.file = table.name(),
+              .pointer = "column " + table.header()[column.number],
+              .line = line,
+              .found = fmt::format("{:g} d as the first time", first),
+              .allowed = fmt::format("this looks like a spreadsheet's day number (for {})", *day),
+              .way_out = "Give the column the format yyyy-mm-dd hh:mm, export it again and write "
+                         "\"dates\": \"year first\" in place of \"unit\"."});
+  return false;
 }
 
 bool CellReader::finish(core::FaultList& faults) {

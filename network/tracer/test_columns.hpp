@@ -52,6 +52,11 @@ struct TimeAndValue {
 std::optional<TimeAndValue> read_time_and_value(core::ObjectReader& reader, const TestClock& clock,
                                                 const core::CsvTable& table, core::Measure measure);
 
+/// False, with a fault, when the first time [d] of an elapsed column is a spreadsheet's day number:
+/// a test of 120 years would follow.
+bool plausible_first_time(double first, int line, const TimeColumn& column, double dose_at,
+                          const core::CsvTable& table, core::FaultList& faults);
+
 /// Reads cells of one table. Of many faults the first few are kept and the rest counted, so that a
 /// wrong column does not bury the other messages.
 class CellReader {

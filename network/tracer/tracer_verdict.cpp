@@ -74,6 +74,11 @@ std::string salt_hint(double recovery) {
 
 void judge_recovery(const TracerMoments& moments, const TracerTest& test, Sentences& sentences) {
   const double recovery = moments.recovery;
+  if (!test.conservative) {
+    sentences.add(Weight::minor,
+                  "The tracer is stated as not conservative: what it loses in the tank lowers "
+                  "recovery and mean beside what mixing does.");
+  }
   const std::string salt = is_lithium(test.tracer) ? salt_hint(recovery) : std::string();
   // 85 to 115 %: common practice, no source.
   if (recovery >= 0.85 && recovery <= 1.15) {

@@ -407,6 +407,13 @@ TEST(TracerVerdict, TwoHumpsAreTwoPathsNotNoise) {
   EXPECT_THAT(moments_of(pulse_test(), one).verdict, Each(Not(HasSubstr("rises again"))));
 }
 
+TEST(TracerVerdict, ATracerThatDecaysIsTold) {
+  TracerTest test = pulse_test();
+  test.conservative = false;
+  EXPECT_THAT(moments_of(test, sampled(every(1.0, 80.0), tank, 0.02)).verdict,
+              Contains(HasSubstr("stated as not conservative")));
+}
+
 TEST(TracerVerdict, APeakOfOneSampleIsTold) {
   const auto spike = [](double t) { return t < 4.5 && t > 3.5 ? 20.0 : 2.0 * std::exp(-t / 10.0); };
   const TracerMoments m = moments_of(pulse_test(), sampled(every(2.0, 60.0), spike, 0.02));

@@ -384,6 +384,10 @@ TEST(TracerTestReader, BadFlowRecordsAreFaults) {
                         "sample"));
   EXPECT_THAT(read_with_record("day,q\n0,NA\n", "t,c\n1,8\n").faults,
               HasSubstr("no row has both a time and a flow"));
+  EXPECT_THAT(
+      read_with_record("day,q\n46083.5,100\n46084,50\n", "t,c\n1,8\n").faults,
+      HasSubstr("flow.csv column day (line 2): 46083.5 d as the first time; this looks like "
+                "a spreadsheet's day number"));
 }
 
 TEST(TracerTestReader, TwoWaysToWriteTimesAreRefused) {
