@@ -1,6 +1,7 @@
 #include "network/snapshot.hpp"
 
 #include <algorithm>
+#include <compare>
 #include <limits>
 #include <utility>
 
@@ -20,7 +21,9 @@ SnapshotMaker::SnapshotMaker(const Case& the_case, DigesterSystem& system)
   if (!the_case.zones.empty()) outlet.temperature = the_case.zones.front().temperature.value();
   outlet.gas_temperature = outlet.temperature;
   for (const Zone& zone : the_case.zones) {
-    if (zone.temperature != the_case.zones.front().temperature) one_temperature_ = false;
+    if (std::is_neq(zone.temperature <=> the_case.zones.front().temperature)) {
+      one_temperature_ = false;
+    }
   }
   outlet_conditions_.assign(the_case.outlets.size(), outlet);
   outlets_ = std::make_unique<kinetics::ZoneKinetics>(the_case.kinetics, outlet_conditions_);
