@@ -34,7 +34,7 @@ FitUncertainty fit_uncertainty(const LeastSquaresFit& fit, std::size_t n_paramet
   result.standard_error.assign(n_parameters, 0.0);
   const std::vector<Index> columns = free_columns(fit);
   const auto n_free = static_cast<Index>(columns.size());
-  result.degrees_of_freedom = n - n_free;
+  result.degrees_of_freedom = static_cast<long>(fit.n_observations) - n_free;
   result.residual_deviation =
       result.degrees_of_freedom > 0
           ? std::sqrt(fit.sum_of_squares / static_cast<double>(result.degrees_of_freedom))
@@ -116,9 +116,16 @@ class Profile {
     for (std::size_t j = 0; j < parameters_.size(); ++j) parameters_[j].start = nearest_[j];
     const FitParameter kept = parameters_[held_];
     parameters_[held_].start = parameters_[held_].low = parameters_[held_].high = value;
+    // Next to the last solution first; from afar only when that fails.
     LeastSquaresOptions options = options_;
-    options.more_starts.push_back(fit_.parameters);
-    const auto refit = fit_least_squares(function_, parameters_, options);
+    options.accept_plateau = true;
+    options.timid_steps_too = false;
+    auto refit = fit_least_squares(function_, parameters_, options);
+    if (!refit) {
+      options.timid_steps_too = true;
+      options.more_starts.push_back(fit_.parameters);
+      refit = fit_least_squares(function_, parameters_, options);
+    }
     parameters_[held_] = kept;
     if (!refit) return std::nullopt;
     nearest_ = refit.value().parameters;

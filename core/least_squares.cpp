@@ -168,6 +168,7 @@ void fill_fit(const ResidualFunction& function, std::span<const FitParameter> pa
   fit.jacobian.resize(function.n_residuals() * function.n_parameters());
   const bool valid = function.evaluate(fit.parameters, fit.residuals, fit.jacobian);
   SZ_REQUIRE(valid, "the solution cannot be evaluated again");
+  fit.n_observations = function.n_observations();
   fit.sum_of_squares = 0.0;
   for (const double residual : fit.residuals) fit.sum_of_squares += residual * residual;
   for (std::size_t j = 0; j < parameters.size(); ++j) {
@@ -183,7 +184,11 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
                                           const LeastSquaresOptions& options) {
   SZ_REQUIRE(parameters.size() == function.n_parameters() && !parameters.empty(),
              "{} parameters for a function of {}", parameters.size(), function.n_parameters());
-  FLAGS_minloglevel = google::FATAL;  // Ceres' own log lines would land on the user's stderr
+  // Ceres' own log lines would land on the user's stderr. Set once: fits run side by side.
+  [[maybe_unused]] static const bool kQuiet = [] {
+    FLAGS_minloglevel = google::FATAL;
+    return true;
+  }();
 
   std::vector<std::vector<double>> starts(1);
   for (const FitParameter& parameter : parameters) starts[0].push_back(parameter.start);
@@ -193,6 +198,7 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
   const OneStart* best = nullptr;
   for (const auto& start : starts) {
     for (const double radius : kFirstRadii) {
+      if (radius < 1.0 && !options.timid_steps_too) continue;
       ends.push_back(solve_from(function, parameters, start, radius, options));
     }
   }

@@ -29,6 +29,9 @@ class ResidualFunction {
 
   [[nodiscard]] virtual std::size_t n_residuals() const = 0;
   [[nodiscard]] virtual std::size_t n_parameters() const = 0;
+  /// Residuals that count as observations for the degrees of freedom: one that only says "below the
+  /// detection limit" does not.
+  [[nodiscard]] virtual std::size_t n_observations() const { return n_residuals(); }
   /// @param jacobian row after row, n_residuals * n_parameters; empty when not wanted.
   /// @return false when the model cannot be evaluated at these parameters.
   [[nodiscard]] virtual bool evaluate(std::span<const double> parameters,
@@ -44,6 +47,9 @@ struct LeastSquaresOptions {
   /// A solution at which some parameter has no effect (a plateau) is a Failure, unless the caller
   /// asks to see it: then LeastSquaresFit::without_effect tells which.
   bool accept_plateau = false;
+  /// Tries each start with a bold and a timid first step; false: only the bold one (refits that
+  /// start next to the solution).
+  bool timid_steps_too = true;
   /// Further starting points besides the parameters' own; each as long as the parameters.
   std::vector<std::vector<double>> more_starts;
 };
@@ -53,10 +59,11 @@ struct LeastSquaresFit {
   std::vector<double> residuals;     ///< weighted, without the loss
   std::vector<double> jacobian;      ///< at the solution, row after row
   double sum_of_squares = 0.0;       ///< of the residuals
+  std::size_t n_observations = 0;    ///< of the function
   std::vector<bool> at_bound;        ///< one per parameter
   std::vector<bool> without_effect;  ///< one per parameter; only with accept_plateau
   int iterations = 0;
-  std::size_t starts_tried = 0;     ///< each start counts twice: a bold and a timid first step
+  std::size_t starts_tried = 0;     ///< a start counts twice when bold and timid steps are tried
   std::size_t starts_agreeing = 0;  ///< that reached this minimum
   std::string ended;                ///< why it stopped, with the numbers
 };

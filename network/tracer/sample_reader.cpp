@@ -159,6 +159,7 @@ TracerSample averaged(std::vector<TracerSample>::const_iterator first,
   if (n > 0) {
     result.value = sum / n;
     result.error = std::sqrt(squares) / n;
+    result.n_averaged = n;
   }
   return result;
 }
@@ -299,6 +300,8 @@ std::optional<SamplingPoint> read_sampling_point(ObjectReader& reader, const Tes
   point.at = reader.text("at", Need::optional).value_or("outlet");
   const auto csv = reader.text("csv", Need::required);
   const ErrorModel error = read_error(reader);
+  point.error_absolute = error.absolute;
+  point.error_relative = error.relative;
   const auto limit = reader.quantity<Measure::concentration>(
       "detection_limit", Need::optional, ObjectReader::not_negative(Measure::concentration));
   if (limit) point.detection_limit = 1000.0 * limit->value();

@@ -278,6 +278,8 @@ std::optional<TracerTest> read_tracer_test(const core::JsonDocument& document,
   static const std::array<std::string, 2> kRecovery = {"fitted", "as dosed"};
   test.recovery_fitted =
       reader.word("recovery", kRecovery, Need::optional).value_or("fitted") == "fitted";
+  static const std::array<std::string, 2> kLoss = {"squares", "robust"};
+  test.robust = reader.word("loss", kLoss, Need::optional).value_or("squares") == "robust";
   read_models(reader, test);
   read_points(reader, clock, test);
   refuse_free_quantities(reader, free_quantities);

@@ -19,6 +19,7 @@ struct TracerSample {
   double error = 0.0;     ///< [g/m3] standard deviation, > 0
   bool censored = false;  ///< under the detection limit: known only to be <= value
   int line = 0;           ///< in its CSV
+  int n_averaged = 1;     ///< readings of the same time behind it
 };
 
 struct SamplingPoint {
@@ -27,6 +28,8 @@ struct SamplingPoint {
   std::vector<TracerSample> samples;  ///< time order, from the dose on
   std::vector<TracerSample> before;   ///< before the dose
   double detection_limit = 0.0;       ///< [g/m3], 0 when not stated
+  double error_absolute = 0.0;        ///< [g/m3] part of the standard deviation of one reading
+  double error_relative = 0.0;        ///< [1] part in proportion to the reading
   std::vector<std::string> notes;     ///< what was cleaned: duplicates averaged, rows dropped ...
 };
 
@@ -59,6 +62,7 @@ struct TracerTest {
   Background background;
   std::vector<SamplingPoint> points;
   bool recovery_fitted = true;
+  bool robust = false;  ///< outlying samples count less ("loss": "robust")
   bool conservative = true;
   std::vector<std::string> models;       ///< candidate names wanted
   std::vector<std::string> model_cases;  ///< paths of user networks, relative to the test
