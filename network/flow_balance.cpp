@@ -8,6 +8,7 @@
 #include "core/require.hpp"
 #include "network/flow_checks.hpp"
 #include "network/flow_equations.hpp"
+#include "network/flow_solution.hpp"
 #include "network/flow_system.hpp"
 
 namespace stillzone::network {
@@ -77,67 +78,11 @@ std::string when_text(const Case& the_case, const SwitchState& state) {
 
 }  // namespace
 
-struct FlowBalance::Impl {
-  explicit Impl(const Case& the_case)
-      : equations(the_case),
-        system(equations.rows, equations.known),
-        means(schedule_means(the_case)) {}
-
-  FlowEquations equations;
-  FlowSystem system;
-  std::vector<double> means;  ///< of the schedules
-
-  /// All variables of the system for given schedule factors and feed rates.
-  [[nodiscard]] std::vector<double> variables(const Case& the_case,
-                                              const SwitchState& state) const {
-    std::vector<double> x(equations.known.size(), 0.0);
-    double scale = 0.0;
-    for (std::size_t i = 0; i < equations.n_flows; ++i) {
-      const Flow& flow = the_case.flows[i];
-      if (!flow.given) continue;
-      x[i] = flow.given->value() * (flow.schedule ? state.factors[flow.schedule->value()] : 1.0);
-      scale = std::max(scale, x[i]);
-    }
-    for (std::size_t f = 0; f < equations.n_feeds; ++f) {
-      double factor = 1.0;
-      if (const auto schedule = the_case.feeds[f].schedule) {
-        factor = state.factors[schedule->value()] / means[schedule->value()];
-      }
-      x[equations.feed_rate(f)] = state.feeds[f] * factor;
-      scale = std::max(scale, x[equations.feed_rate(f)]);
-    }
-    system.substitute(x);
-    for (std::size_t i = 0; i < equations.n_flows; ++i) {
-      if (std::abs(x[i]) <= 1e-13 * scale) x[i] = 0.0;  // what rounding leaves of "the rest"
-    }
-    return x;
-  }
-
-  [[nodiscard]] SwitchState mean_state(const Case& the_case, double t) const {
-    SwitchState state = state_at(the_case, t);
-    state.factors = means;
-    return state;
-  }
+struct FlowBalance::Impl : FlowSolution {
+  using FlowSolution::FlowSolution;
 };
 
 namespace {
-
-/// Stream rates from the variables: an exchange carries its flow both ways and its drift on top.
-std::vector<double> to_streams(std::span<const Stream> streams, const Case& the_case,
-                               const FlowEquations& equations, std::span<const double> x) {
-  std::vector<double> rates;
-  rates.reserve(streams.size());
-  for (const Stream& stream : streams) {
-    double rate = x[stream.flow];
-    const Flow& flow = the_case.flows[stream.flow];
-    if (flow.exchange) {
-      const double drift = x[equations.drift(stream.flow)];
-      rate += std::max(0.0, stream.from == flow.from ? drift : -drift);
-    }
-    rates.push_back(rate);
-  }
-  return rates;
-}
 
 /// Warns when the drift had more than one route: exchanges on rings that carry some.
 void warn_of_divided_drift(const Case& the_case, const FlowEquations& equations,
@@ -243,13 +188,13 @@ std::optional<FlowBalance> FlowBalance::solve(const Case& the_case,
 }
 
 std::vector<double> FlowBalance::rates_at(const Case& the_case, double t) const {
-  return to_streams(streams_, the_case, impl_->equations,
-                    impl_->variables(the_case, state_at(the_case, t)));
+  return stream_rates(streams_, the_case, impl_->equations,
+                      impl_->variables(the_case, state_at(the_case, t)));
 }
 
 std::vector<double> FlowBalance::mean_rates(const Case& the_case, double t) const {
-  return to_streams(streams_, the_case, impl_->equations,
-                    impl_->variables(the_case, impl_->mean_state(the_case, t)));
+  return stream_rates(streams_, the_case, impl_->equations,
+                      impl_->variables(the_case, impl_->mean_state(the_case, t)));
 }
 
 double FlowBalance::closure_error(const Case& the_case, std::span<const double> rates) const {

@@ -23,7 +23,7 @@ using Parameters = std::array<Real<N>, N>;
 template <std::size_t N>
 using Impulses = std::vector<std::pair<double, Real<N>>>;
 
-/// 1 - exp(-theta / v), its density and its integral: one mixed tank of volume v.
+/// 1 - exp(-theta / v) and its density: one mixed tank of volume v.
 template <std::size_t N>
 Real<N> tank_step(const Real<N>& v, double theta) {
   return -expm1(Real<N>(-theta) / v);
@@ -32,17 +32,12 @@ template <std::size_t N>
 Real<N> tank_density(const Real<N>& v, double theta) {
   return exp(Real<N>(-theta) / v) / v;
 }
-template <std::size_t N>
-Real<N> tank_ramp(const Real<N>& v, double theta) {
-  return Real<N>(theta) + v * expm1(Real<N>(-theta) / v);
-}
 
 struct OneTank {
   static constexpr std::size_t n = 1;  // volume
   using P = Parameters<n>;
   static Real<n> step(const P& p, double theta) { return tank_step(p[0], theta); }
   static Real<n> density(const P& p, double theta) { return tank_density(p[0], theta); }
-  static Real<n> ramp(const P& p, double theta) { return tank_ramp(p[0], theta); }
   static Impulses<n> impulses(const P& /*p*/) { return {}; }
   template <class T>
   static T transform(const std::array<T, n>& p, const T& s) {
@@ -62,12 +57,6 @@ struct TanksInSeries {
   }
   static Real<n> density(const P& p, double theta) {
     return gamma_density(p[1], p[1] * Real<n>(theta) / p[0]) * p[1] / p[0];
-  }
-  /// integral of F = theta F(N, x) - v F(N + 1, x), x = N theta / v.
-  static Real<n> ramp(const P& p, double theta) {
-    const Real<n> x = p[1] * Real<n>(theta) / p[0];
-    return Real<n>(theta) * gamma_cumulative(p[1], x) -
-           p[0] * gamma_cumulative(p[1] + Real<n>(1.0), x);
   }
   static Impulses<n> impulses(const P& /*p*/) { return {}; }
   template <class T>
@@ -89,9 +78,6 @@ struct BypassDead {
   }
   static Real<n> density(const P& p, double theta) {
     return through(p) * tank_density(p[0] / through(p), theta);
-  }
-  static Real<n> ramp(const P& p, double theta) {
-    return p[1] * Real<n>(theta) + through(p) * tank_ramp(p[0] / through(p), theta);
   }
   static Impulses<n> impulses(const P& p) { return {{0.0, p[1]}}; }
   template <class T>
@@ -141,11 +127,6 @@ struct StagnantExchange {
     return m.share1 * m.rate1 * exp(-m.rate1 * Real<n>(theta)) +
            m.share2 * m.rate2 * exp(-m.rate2 * Real<n>(theta));
   }
-  static Real<n> ramp(const P& p, double theta) {
-    const Modes m = modes(p);
-    return m.share1 * tank_ramp(Real<n>(1.0) / m.rate1, theta) +
-           m.share2 * tank_ramp(Real<n>(1.0) / m.rate2, theta);
-  }
   static Impulses<n> impulses(const P& /*p*/) { return {}; }
   template <class T>
   static T transform(const std::array<T, n>& p, const T& s) {
@@ -182,7 +163,6 @@ struct ByInversion {
   }
   static Real<N> step(const P& p, double theta) { return inverted(p, theta, 1); }
   static Real<N> density(const P& p, double theta) { return inverted(p, theta, 0); }
-  static Real<N> ramp(const P& p, double theta) { return inverted(p, theta, 2); }
   static Impulses<N> impulses(const P& /*p*/) { return {}; }
 };
 
@@ -220,10 +200,6 @@ struct PlugTank {
     if (theta < front(p).value) return {0.0};
     return exp(-after(p, theta) / tank(p)) / tank(p);
   }
-  static Real<n> ramp(const P& p, double theta) {
-    if (theta < front(p).value) return {0.0};
-    return after(p, theta) + tank(p) * expm1(-after(p, theta) / tank(p));
-  }
   static Impulses<n> impulses(const P& /*p*/) { return {}; }
   template <class T>
   static T transform(const std::array<T, n>& p, const T& s) {
@@ -248,9 +224,6 @@ struct ParallelPaths {
   }
   static Real<n> density(const P& p, double theta) {
     return both(p, [&](const Real<n>& v) { return tank_density(v, theta); });
-  }
-  static Real<n> ramp(const P& p, double theta) {
-    return both(p, [&](const Real<n>& v) { return tank_ramp(v, theta); });
   }
   static Impulses<n> impulses(const P& /*p*/) { return {}; }
   template <class T>

@@ -51,11 +51,6 @@ class CandidateModel : public RtdModel {
     if (theta < 0.0) return unpack(core::Dual<double, n>(0.0), gradient);
     return unpack(Candidate::density(pack(p), theta), gradient);
   }
-  double ramp_response(std::span<const double> p, double theta,
-                       std::span<double> gradient) const override {
-    if (theta < 0.0) return unpack(core::Dual<double, n>(0.0), gradient);
-    return unpack(Candidate::ramp(pack(p), theta), gradient);
-  }
   [[nodiscard]] std::vector<RtdImpulse> impulses(std::span<const double> p) const override {
     std::vector<RtdImpulse> result;
     for (const auto& [theta, share] : Candidate::impulses(pack(p))) {

@@ -50,9 +50,6 @@ class RtdModel {
   /// E(theta) [1 per turnover] without the impulses. theta >= 0.
   virtual double density(std::span<const double> p, double theta,
                          std::span<double> gradient) const = 0;
-  /// Integral of F from 0 to theta (a ramp's response; the mean over a sampling interval).
-  virtual double ramp_response(std::span<const double> p, double theta,
-                               std::span<double> gradient) const = 0;
   [[nodiscard]] virtual std::vector<RtdImpulse> impulses(std::span<const double> p) const = 0;
   /// Laplace transform of E at s >= 0 [1 per turnover]: what is left of a first-order decay.
   virtual double transform(std::span<const double> p, double s,

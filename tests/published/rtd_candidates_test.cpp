@@ -163,8 +163,6 @@ TEST(RtdCandidates, DerivativesAreThoseOfTheResponses) {
               "step");
         check([&](const auto& q, std::span<double> g) { return model->density(q, theta, g); },
               "density");
-        check([&](const auto& q, std::span<double> g) { return model->ramp_response(q, theta, g); },
-              "ramp");
         check([&](const auto& q, std::span<double> g) { return model->transform(q, theta, g); },
               "transform");
       }
@@ -172,15 +170,13 @@ TEST(RtdCandidates, DerivativesAreThoseOfTheResponses) {
   }
 }
 
-TEST(RtdCandidates, RampIsTheIntegralOfTheStepAndStepThatOfTheDensity) {
+TEST(RtdCandidates, StepIsTheIntegralOfTheDensity) {
   for (const std::string& name : rtd_model_names()) {
     const auto model = unit_model(name);
     std::vector<double> p;
     for (const RtdParameter& parameter : model->parameters()) p.push_back(parameter.start);
     for (const double theta : {0.2, 0.9, 3.0}) {
-      const auto ramp = [&](double x) { return model->ramp_response(p, x, {}); };
       const auto step = [&](double x) { return model->step_response(p, x, {}); };
-      EXPECT_NEAR(difference(ramp, theta, 2e-3), step(theta), 1e-9) << name;
       EXPECT_NEAR(difference(step, theta, 2e-3), model->density(p, theta, {}), 1e-8) << name;
     }
     EXPECT_NEAR(model->transform(p, 0.0, {}), 1.0, 1e-12) << name;
