@@ -153,6 +153,7 @@ std::optional<double> profile_end(Profile& profile, double centre, double step, 
                                   double limit) {
   profile.restart();
   double inside = centre;
+  double inside_excess = -limit;
   const double direction = step < 0.0 ? -1.0 : 1.0;
   double outside = centre + step;
   for (int k = 0; k < 60; ++k) {
@@ -169,13 +170,19 @@ std::optional<double> profile_end(Profile& profile, double centre, double step, 
       const auto close = [](double a, double b) {
         return std::abs(a - b) <= 1e-7 * (std::abs(a) + std::abs(b));
       };
-      const double low = std::min(inside, outside);
-      const double high = std::max(inside, outside);
-      const auto [a, b] = boost::math::tools::toms748_solve(excess, low, high, close, most);
+      // The ends' values are kept as they were found: a refit on another way there may differ.
+      const double outside_excess = std::abs(*root) - limit;
+      if (!(outside_excess > 0.0)) return outside;
+      const bool upwards = inside < outside;
+      const auto [a, b] = boost::math::tools::toms748_solve(
+          excess, upwards ? inside : outside, upwards ? outside : inside,
+          upwards ? inside_excess : outside_excess, upwards ? outside_excess : inside_excess, close,
+          most);
       return 0.5 * (a + b);
     }
     if (past) return std::nullopt;
     inside = outside;
+    inside_excess = std::abs(*root) - limit;
     outside = centre + 1.6 * (outside - centre);
   }
   return std::nullopt;

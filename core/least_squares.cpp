@@ -218,7 +218,12 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
   fit.ended = best->ended;
   for (const OneStart& end : ends) {
     const double tolerance = 1e-6 * std::abs(best->cost) + 1e-24;
-    if (end.converged && end.cost <= best->cost + tolerance) ++fit.starts_agreeing;
+    if (!end.converged || end.cost > best->cost + tolerance) continue;
+    ++fit.starts_agreeing;
+    for (std::size_t j = 0; j < end.parameters.size(); ++j) {
+      const double size = std::abs(end.parameters[j]) + std::abs(best->parameters[j]);
+      if (std::abs(end.parameters[j] - best->parameters[j]) > 0.01 * size) fit.ambiguous = true;
+    }
   }
   fill_fit(function, parameters, fit);
   for (std::size_t j = 0; !options.accept_plateau && j < parameters.size(); ++j) {

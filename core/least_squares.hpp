@@ -65,7 +65,10 @@ struct LeastSquaresFit {
   int iterations = 0;
   std::size_t starts_tried = 0;     ///< a start counts twice when bold and timid steps are tried
   std::size_t starts_agreeing = 0;  ///< that reached this minimum
-  std::string ended;                ///< why it stopped, with the numbers
+  /// Some other start ended elsewhere with the same sum of squares (to 1e-6): not the only
+  /// solution.
+  bool ambiguous = false;
+  std::string ended;  ///< why it stopped, with the numbers
 };
 
 /// Bounded, optionally robust least squares (Ceres, trust region), the best of several starts.

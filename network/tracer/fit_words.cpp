@@ -45,12 +45,17 @@ void judge_parameter(FittedParameter& p) {
   p.verdict = half < 0.1 ? "well held" : half < 0.3 ? "held" : "roughly held";
 }
 
-void add_remarks(bool singular, ModelFit& fit) {
+void add_remarks(bool singular, bool ambiguous, ModelFit& fit) {
   const std::size_t n = fit.parameters.size();
   if (singular) {
     fit.remarks.emplace_back(
         "Some combination of the parameters is not determined at all by this test: other values "
         "fit exactly as well.");
+  }
+  if (ambiguous && !singular) {
+    fit.remarks.emplace_back(
+        "Other values, not near these, fit exactly as well (two tanks in a row may be swapped, for "
+        "one): narrow the bounds to the ones that can be meant.");
   }
   for (std::size_t a = 0; a < n && !singular; ++a) {
     for (std::size_t b = a + 1; b < n; ++b) {

@@ -11,6 +11,7 @@ void judge_parameter(FittedParameter& parameter);
 
 /// Adds what this test cannot tell to the fit's remarks: parameters that only move together,
 /// undetermined combinations, starts that disagree.
-void add_remarks(bool singular, ModelFit& fit);
+/// @param ambiguous other values, elsewhere, fit equally well
+void add_remarks(bool singular, bool ambiguous, ModelFit& fit);
 
 }  // namespace stillzone::network

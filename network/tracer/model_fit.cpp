@@ -158,6 +158,7 @@ core::Result<core::LeastSquaresFit> fit_reweighted(const TracerTest& test,
     if (!next) return next;
     fit = std::move(next);
   }
+  fit.value().ambiguous = first.ambiguous;
   fit.value().starts_tried = first.starts_tried;
   fit.value().starts_agreeing = first.starts_agreeing;
   return fit;
@@ -306,7 +307,7 @@ core::Result<ModelFit> fit_model(const TracerTest& test, const TracerModel& mode
       judge_parameter(result.parameters[j]);
     }
   }
-  add_remarks(uncertainty.singular, result);
+  add_remarks(uncertainty.singular, fit.ambiguous, result);
   return result;
 }
 
