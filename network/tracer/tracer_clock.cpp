@@ -51,12 +51,12 @@ double TracerTest::turnovers(double t) const {
                       : -volume_passed(*flow_record, t, dose_at) / v;
 }
 
-double TracerTest::time_at(double wanted) const {
-  if (!flow_record) return dose_at + wanted * volume.value() / mean_flow.value();
+double TracerTest::time_at(double turnovers) const {
+  if (!flow_record) return dose_at + turnovers * volume.value() / mean_flow.value();
   const double v = volume.value();
-  if (wanted < 0.0) return time_before(*flow_record, dose_at, -wanted * v);
+  if (turnovers < 0.0) return time_before(*flow_record, dose_at, -turnovers * v);
   double t = dose_at;
-  double left = wanted * v;
+  double left = turnovers * v;
   while (left > 0.0) {
     const double flow = flow_record->value_from(t);
     const auto next = flow_record->next_switch(t);
