@@ -11,6 +11,7 @@
 #include "core/quantity.hpp"
 #include "core/timeline.hpp"
 #include "kinetics/kinetic_model.hpp"
+#include "network/joint_spread.hpp"
 
 namespace stillzone::network {
 
@@ -117,6 +118,7 @@ struct Case {
   std::vector<Flow> flows;
   RunSettings run;
   std::vector<core::FreeQuantity> free_quantities;
+  std::optional<JointSpread> joint_spread;
   std::vector<std::string> warnings;
 
   [[nodiscard]] const std::string& name_of(Place place) const;

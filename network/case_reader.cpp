@@ -220,6 +220,7 @@ std::optional<Case> read_case(const core::JsonDocument& document, const core::Un
   read_outlets(reading, root);
   read_flows(reading, root);
   read_run(reading, root);
+  reading.result.joint_spread = read_joint_spread(root, free_quantities);
   refuse_later_keys(reading, root);
   root.finish();
 
