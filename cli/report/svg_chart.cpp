@@ -122,6 +122,12 @@ std::string marker(double x, double y, std::size_t style) {
                      kShapes[style % kShapes.size()]);
 }
 
+std::string marker_of(const ChartSeries& series, double x, double y) {
+  if (!series.upper_limits) return marker(x, y, series.style);
+  return fmt::format("<path class=\"mk k{}\" d=\"M{:.1f} {:.1f}m0 5l5-9h-10z\"/>", series.style % 8,
+                     x, y);
+}
+
 /// Draws one chart; the members are what all its parts share.
 class ChartDrawing {
  public:
@@ -258,7 +264,7 @@ class ChartDrawing {
       for (std::size_t i = 0; i < series.points.size(); ++i) svg += point(series, i);
       return svg;
     }
-    if (chart_.series.size() < 2) return "";
+    if (chart_.series.size() < 2 || series.bare) return "";
     const double shift = static_cast<double>(series.style % 7) / 7.0;
     for (int m = 0; m < 5; ++m) {
       const double goal = x_.low + (x_.high - x_.low) * (m + 0.15 + 0.8 * shift) / 5.0;
@@ -281,7 +287,7 @@ class ChartDrawing {
                       series.style % 8, x, y_.at(series.low[i]), y_.at(series.high[i]), x - 4.0,
                       y_.at(series.low[i]));
     }
-    return svg + marker(x, y_.at(p.y), series.style);
+    return svg + marker_of(series, x, y_.at(p.y));
   }
 
   [[nodiscard]] std::string marks() const {
@@ -320,7 +326,7 @@ class ChartDrawing {
           svg += fmt::format("<path class=\"sw {}\" d=\"M{} {}h36\"/>", style_classes(series.style),
                              x, y - 4.0);
         }
-        svg += marker(x + 18.0, y - 4.0, series.style);
+        if (!series.bare) svg += marker_of(series, x + 18.0, y - 4.0);
       }
       svg += fmt::format("<text x=\"{}\" y=\"{}\">{}</text>", x + 42.0, y + 1.0,
                          html_escaped(series.name));

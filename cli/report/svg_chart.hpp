@@ -25,6 +25,8 @@ struct ChartSeries {
   std::vector<double> low;         ///< error bars or the lower edge of a band; empty: none
   std::vector<double> high;        ///< same size as points, as `low`
   std::size_t style = 0;           ///< colour, dash and marker go by this number
+  bool bare = false;               ///< a line without markers, told from others by its dash
+  bool upper_limits = false;       ///< points known only to lie lower: marker turned down
 };
 
 struct ChartAxis {

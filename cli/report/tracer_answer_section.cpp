@@ -1,0 +1,142 @@
+// The answer of a tracer test in three sentences, and the verdicts.
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+
+#include "cli/report/page.hpp"
+#include "cli/report/tracer_sections.hpp"
+#include "cli/report/tracer_words.hpp"
+
+namespace stillzone::cli {
+
+namespace {
+
+using network::RankedModel;
+using network::TracerMoments;
+
+std::string model_sentence(const TracerReportInput& input) {
+  const auto& models = input.analysis.models;
+  if (models.empty()) {
+    return "<b>No zone model could be fitted</b> to this test; the reasons stand under Models "
+           "compared.";
+  }
+  const RankedModel& best = models.front();
+  std::string sentence = fmt::format(
+      "Of {} zone model{} fitted, <b>{}</b> explains the samples best (weight {} %): {} (95 % "
+      "intervals)",
+      models.size(), models.size() == 1 ? "" : "s", html_escaped(best.fit.name),
+      brief(100.0 * best.fit.weight, 2), model_in_words(best.fit, input.test));
+  std::string rivals;
+  for (std::size_t m = 1; m < models.size(); ++m) {
+    if (models[m].fit.aicc - best.fit.aicc >= 2.0) break;
+    rivals += (rivals.empty() ? "" : ", ") + html_escaped(models[m].fit.name);
+  }
+  if (!rivals.empty()) {
+    sentence += fmt::format("; {} explain{} them about as well", rivals,
+                            rivals.find(',') == std::string::npos ? "s" : "");
+  }
+  return sentence + ".";
+}
+
+std::string recovery_sentence(const TracerReportInput& input) {
+  const auto& point = input.analysis.points.front();
+  std::string sentence;
+  if (point.moments) {
+    const TracerMoments& moments = *point.moments;
+    sentence =
+        fmt::format("Without any model, <b>{}</b> of the tracer dosed was found at the {}",
+                    with_error(100.0 * moments.recovery, 100.0 * moments.errors.recovery, "%"),
+                    html_escaped(point.at));
+    if (moments.tail.share > 0.0) {
+      sentence += fmt::format(" ({} % of that extrapolated beyond the last sample)",
+                              brief(100.0 * moments.tail.share, 2));
+    }
+  } else {
+    sentence =
+        fmt::format("Without a model the samples give no recovery: {}", html_escaped(point.reason));
+    while (!sentence.empty() && sentence.back() == '.') sentence.pop_back();
+  }
+  if (input.analysis.models.empty()) return sentence + ".";
+  if (!input.test.recovery_fitted) return sentence + "; the fits take it all as recovered.";
+  for (const auto& p : input.analysis.models.front().fit.parameters) {
+    if (p.name == "recovered_fraction") {
+      sentence +=
+          fmt::format("; the best fit puts it at {} (95 %)", interval_in_words(p, 100.0, "%"));
+    }
+  }
+  return sentence + ".";
+}
+
+std::string residence_sentence(const TracerReportInput& input) {
+  const double nominal = input.test.volume.value() / input.test.mean_flow.value();
+  const double ideal_t10 = -std::log(0.9) * nominal;
+  const auto& point = input.analysis.points.front();
+  std::string sentence;
+  double t10 = std::nan("");
+  if (point.moments) {
+    const TracerMoments& moments = *point.moments;
+    sentence = fmt::format(
+        "The tracer stays <b>{}</b> on average, {} % of the nominal {} d, and its first tenth has "
+        "left after <b>{}</b>, where one ideally mixed tank takes {} d",
+        with_error(moments.mean, moments.errors.mean, "d"),
+        brief(100.0 * moments.active_fraction, 3), brief(nominal, 3),
+        with_error(moments.t10, moments.errors.t10, "d"), brief(ideal_t10, 3));
+    t10 = moments.t10;
+  } else if (!input.analysis.models.empty()) {
+    const auto& insight = input.analysis.models.front().insight;
+    sentence = fmt::format(
+        "By the best model the water stays <b>{} d</b> on average (nominal {} d), and its first "
+        "tenth has left after <b>{} d</b>, where one ideally mixed tank takes {} d",
+        brief(insight.mean, 3), brief(nominal, 3), brief(insight.t10, 3), brief(ideal_t10, 3));
+    t10 = insight.t10;
+  } else {
+    return fmt::format("The nominal residence time is {} d; this test adds nothing to it.",
+                       brief(nominal, 3));
+  }
+  if (t10 < 0.85 * ideal_t10) {
+    sentence += ": part of the feed leaves too early";
+  } else if (t10 > 1.15 * ideal_t10) {
+    sentence += ": the first of the feed leaves later than from a mixed tank";
+  } else {
+    sentence += ": near that of a mixed tank";
+  }
+  return sentence + ".";
+}
+
+std::string list_of(const std::string& heading, const std::vector<std::string>& sentences) {
+  if (sentences.empty()) return "";
+  std::string html = fmt::format("<h3>{}</h3>\n<ul>", heading);
+  for (const std::string& sentence : sentences) html += "<li>" + html_escaped(sentence) + "</li>";
+  return html + "</ul>\n";
+}
+
+}  // namespace
+
+std::string tracer_answer_section(const TracerReportInput& input) {
+  std::string html =
+      fmt::format("<div class=answer><p>{}</p><p>{}</p><p>{}</p></div>\n", model_sentence(input),
+                  recovery_sentence(input), residence_sentence(input));
+  html +=
+      "<p class=note>Intervals and errors come from the scatter of the samples. Errors of dose, "
+      "flow and volume come on top and are not in them.</p>\n";
+  for (const auto& point : input.analysis.points) {
+    const std::string at =
+        input.analysis.points.size() > 1 ? " at " + html_escaped(point.at) : std::string();
+    if (point.moments) {
+      html += list_of("Verdict on the data" + at, point.moments->verdict);
+    } else {
+      html += list_of("Verdict on the data" + at, {"No moments: " + point.reason});
+    }
+  }
+  if (input.analysis.models.empty()) return html;
+  const auto& fit = input.analysis.models.front().fit;
+  std::vector<std::string> words = fit.tests.words;
+  if (words.empty()) {
+    words.emplace_back("The residuals look random and as wide as the stated errors.");
+  }
+  words.insert(words.end(), fit.remarks.begin(), fit.remarks.end());
+  return html + list_of("Verdict on the best fit", words);
+}
+
+}  // namespace stillzone::cli

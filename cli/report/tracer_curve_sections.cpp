@@ -1,0 +1,249 @@
+// Samples and fits over time, and what the fits leave over.
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cmath>
+#include <limits>
+
+#include "cli/report/page.hpp"
+#include "cli/report/svg_chart.hpp"
+#include "cli/report/tracer_sections.hpp"
+
+namespace stillzone::cli {
+
+namespace {
+
+using network::RankedModel;
+using network::TracerSample;
+using network::TracerTest;
+
+constexpr std::size_t kSampleStyle = 5;
+constexpr std::size_t kLimitStyle = 4;
+constexpr std::size_t kBeforeStyle = 3;
+constexpr int kGrid = 240;
+
+double background_at(const TracerTest& test, double time) {
+  return test.background.level + test.background.slope * (time - test.dose_at);
+}
+
+std::size_t n_shown(const TracerReportInput& input) {
+  return std::min(kModelsShown, input.analysis.models.size());
+}
+
+double last_time(const TracerTest& test) {
+  double last = test.dose_at;
+  for (const auto& point : test.points) {
+    if (!point.samples.empty()) last = std::max(last, point.samples.back().time);
+  }
+  return last;
+}
+
+/// Times [d] of a fitted curve: dense after the dose, where the curve bends, and on past the last
+/// sample by a quarter of the test.
+std::vector<double> curve_times(const TracerTest& test) {
+  const double length = 1.25 * (last_time(test) - test.dose_at);
+  std::vector<double> times;
+  for (int i = 0; i <= kGrid; ++i) {
+    const double share = static_cast<double>(i) / kGrid;
+    times.push_back(test.dose_at + length * share * share);
+  }
+  if (const auto* pulse = std::get_if<network::PulseDose>(&test.dose)) {
+    times.push_back(test.dose_at + pulse->duration);
+    times.push_back(test.dose_at + pulse->duration * 1.0001 + 1e-9 * length);
+  }
+  std::ranges::sort(times);
+  const auto repeated = std::ranges::unique(times);
+  times.erase(repeated.begin(), repeated.end());
+  return times;
+}
+
+ChartSeries fitted_curve(const TracerTest& test, const RankedModel& ranked, std::size_t point,
+                         std::size_t rank) {
+  ChartSeries series;
+  series.name = ranked.fit.name;
+  series.style = rank;
+  series.bare = true;
+  const std::vector<double> times = curve_times(test);
+  std::vector<network::SamplePosition> positions;
+  for (const double t : times) positions.push_back({point, test.turnovers(t)});
+  std::vector<double> values(times.size());
+  if (!ranked.model->predict(ranked.fit.model_values(), positions, values, {})) return series;
+  const double recovered = ranked.fit.recovered_fraction();
+  for (std::size_t i = 0; i < times.size(); ++i) {
+    if (std::isfinite(values[i])) series.points.push_back({times[i], recovered * values[i]});
+  }
+  return series;
+}
+
+ChartSeries sample_series(const TracerTest& test, const std::vector<TracerSample>& samples,
+                          const char* name, std::size_t style, bool censored) {
+  ChartSeries series;
+  series.name = name;
+  series.kind = ChartSeries::Kind::points;
+  series.style = style;
+  series.upper_limits = censored;
+  for (const TracerSample& sample : samples) {
+    if (sample.censored != censored) continue;
+    const double net = sample.value - background_at(test, sample.time);
+    series.points.push_back({sample.time, net});
+    series.low.push_back(censored ? std::min(net, 0.0) : net - sample.error);
+    series.high.push_back(censored ? net : net + sample.error);
+  }
+  return series;
+}
+
+Chart curve_chart(const TracerReportInput& input, std::size_t p) {
+  const TracerTest& test = input.test;
+  const auto& point = test.points[p];
+  Chart chart;
+  chart.title = fmt::format("Tracer at {}, background taken off", point.at);
+  chart.x = {"time", "d", false, {}, {}};
+  chart.y = {test.tracer.empty() ? "tracer" : test.tracer, "g/m\u00B3", false, {}, {}};
+  for (std::size_t m = 0; m < n_shown(input); ++m) {
+    chart.series.push_back(fitted_curve(test, input.analysis.models[m], p, m));
+  }
+  const auto add = [&](ChartSeries series) {
+    if (!series.points.empty()) chart.series.push_back(std::move(series));
+  };
+  add(sample_series(test, point.samples, "samples", kSampleStyle, false));
+  add(sample_series(test, point.samples, "under detection limit", kLimitStyle, true));
+  add(sample_series(test, point.before, "before the dose", kBeforeStyle, false));
+  chart.marks.push_back({test.dose_at, "dose"});
+  const double last = last_time(test);
+  if (n_shown(input) > 0 && last > test.dose_at) chart.marks.push_back({last, "last sample"});
+  return chart;
+}
+
+/// The same on a logarithmic scale: from half of the lowest positive sample or limit up.
+std::optional<Chart> logarithmic(Chart chart) {
+  double lowest = std::numeric_limits<double>::infinity();
+  for (const ChartSeries& series : chart.series) {
+    if (series.kind != ChartSeries::Kind::points || series.name == "before the dose") continue;
+    for (const ChartPoint& point : series.points) {
+      if (point.y > 0.0) lowest = std::min(lowest, point.y);
+    }
+  }
+  if (!std::isfinite(lowest)) return std::nullopt;
+  const double floor = 0.5 * lowest;
+  chart.y.logarithmic = true;
+  chart.y.low = floor;
+  std::erase_if(chart.series,
+                [](const ChartSeries& series) { return series.name == "before the dose"; });
+  for (ChartSeries& series : chart.series) {
+    if (series.kind == ChartSeries::Kind::line) {
+      std::erase_if(series.points, [&](const ChartPoint& point) { return point.y < floor; });
+    }
+    for (double& low : series.low) low = std::max(low, floor);
+    for (std::size_t i = 0; i < series.high.size(); ++i) {
+      series.high[i] = std::max(series.high[i], floor);
+      if (series.points[i].y <= 0.0) series.points[i].y = 0.0;  // left out by the scale
+    }
+  }
+  return chart;
+}
+
+std::string censored_words(const network::SamplingPoint& point) {
+  const auto n = std::ranges::count_if(point.samples, &TracerSample::censored);
+  if (n == 0) return "";
+  return fmt::format(
+      " {} of {} samples lie under the detection limit: the mark stands at the limit, and the bar "
+      "below it says that the value may be anything from there down.",
+      n, point.samples.size());
+}
+
+std::string residual_figure(const TracerReportInput& input, std::size_t p) {
+  Chart chart;
+  const auto& at = input.test.points[p].at;
+  chart.title = "Residuals at " + at;
+  chart.x = {"time", "d", false, {}, {}};
+  chart.y = {"(fitted \u2212 measured) / error", "", false, {}, {}};
+  const auto& models = input.analysis.models;
+  std::vector<std::vector<std::string>> rows;
+  for (std::size_t m = 0; m < n_shown(input); ++m) {
+    ChartSeries series;
+    series.name = models[m].fit.name;
+    series.kind = ChartSeries::Kind::points;
+    series.style = m;
+    for (const network::FittedSample& s : models[m].fit.samples) {
+      if (s.point != p) continue;
+      rows.push_back({series.name, fmt::format("{:.6g}", s.time), s.censored ? "yes" : "no",
+                      fmt::format("{:.6g}", s.measured), fmt::format("{:.6g}", s.fitted),
+                      fmt::format("{:.6g}", s.deviation), fmt::format("{:.6g}", s.residual),
+                      fmt::format("{:.4g}", s.weight)});
+      if (!s.censored) series.points.push_back({s.time, s.residual});
+    }
+    chart.series.push_back(std::move(series));
+  }
+  const double from = input.test.dose_at;
+  const double to = last_time(input.test);
+  chart.series.push_back({.name = "within 2 errors",
+                          .kind = ChartSeries::Kind::band,
+                          .points = {{from, 0.0}, {to, 0.0}},
+                          .low = {-2.0, -2.0},
+                          .high = {2.0, 2.0},
+                          .style = 7});
+  return html_figure(
+      fmt::format("residuals-{}", at), svg_of(chart),
+      fmt::format("<b>Residuals at {}</b> in units of the error each sample has in the fit; above "
+                  "0 the fit lies higher than the sample. Samples under the limit are left out "
+                  "here and are in the CSV.",
+                  html_escaped(at)),
+      csv_of({"model", "time [d]", "under the limit", "measured, net [g/m3]", "fitted, net [g/m3]",
+              "error in the fit [g/m3]", "residual", "weight"},
+             rows));
+}
+
+}  // namespace
+
+std::string tracer_curve_section(const TracerReportInput& input) {
+  std::string html;
+  for (std::size_t p = 0; p < input.test.points.size(); ++p) {
+    const auto& point = input.test.points[p];
+    const Chart chart = curve_chart(input, p);
+    const std::string caption = fmt::format(
+        "<b>{} at {}</b>, background taken off. Bars: one standard deviation, as stated. {}{}",
+        html_escaped(input.test.tracer), html_escaped(point.at),
+        n_shown(input) > 0 ? "Curves: the best models, drawn on past the last sample." : "",
+        censored_words(point));
+    std::string charts =
+        html_figure(fmt::format("curve-{}", point.at), svg_of(chart), caption, csv_of(chart));
+    if (const auto log_chart = logarithmic(chart)) {
+      charts += html_figure(
+          fmt::format("curve-log-{}", point.at), svg_of(*log_chart),
+          fmt::format("<b>The same on a logarithmic scale</b>: one mixed tank falls along a "
+                      "straight line; a bend to a slower fall is water that stood still. Values "
+                      "not above 0 cannot be drawn here.{}",
+                      input.test.flow_record ? " The flow varied, so that even one mixed tank "
+                                               "does not fall along a quite straight line."
+                                             : ""),
+          csv_of(*log_chart));
+    }
+    html += "<div class=charts>" + charts + "</div>\n";
+  }
+  return html;
+}
+
+std::string tracer_residual_section(const TracerReportInput& input) {
+  std::string html = "<div class=charts>";
+  for (std::size_t p = 0; p < input.test.points.size(); ++p) html += residual_figure(input, p);
+  html += "</div>\n";
+  HtmlTable table;
+  table.head = {"Model", "Runs of one sign", "Chance of so few\n%", "Chance of such scatter\n%",
+                "In words"};
+  table.left = {true, false, false, false, true};
+  for (std::size_t m = 0; m < n_shown(input); ++m) {
+    const auto& fit = input.analysis.models[m].fit;
+    std::string words;
+    for (const std::string& sentence : fit.tests.words)
+      words += (words.empty() ? "" : " ") + sentence;
+    table.rows.push_back({fit.name, fit.tests.runs_p ? std::to_string(fit.tests.n_runs) : "n/a",
+                          fit.tests.runs_p ? shown(100.0 * *fit.tests.runs_p, 2) : "too few",
+                          shown(100.0 * fit.tests.scatter_p, 2),
+                          words.empty() ? "Nothing against the model." : words});
+  }
+  return html + html_of(table) +
+         "<p class=note>Runs test: Wald and Wolfowitz (1940). A small chance (under 5 %) speaks "
+         "against the model, or against the stated errors.</p>\n";
+}
+
+}  // namespace stillzone::cli

@@ -1,0 +1,31 @@
+#pragma once
+
+#include <optional>
+#include <string>
+
+#include "network/tracer/model_fit.hpp"
+#include "network/tracer/tracer_test.hpp"
+
+namespace stillzone::cli {
+
+/// A range as people read it: "31 to 38 %", "at most 38 %", "at least 31 %"; without an end
+/// "about 34 % (not held by this test)". As many decimals as its width needs.
+/// @param unit after the numbers; empty: none
+[[nodiscard]] std::string range_in_words(std::optional<double> low, std::optional<double> high,
+                                         double value, const std::string& unit);
+
+/// A parameter's 95 % interval in other terms: ends times factor, or (1 - end) times factor.
+[[nodiscard]] std::string interval_in_words(const network::FittedParameter& parameter,
+                                            double factor, const std::string& unit,
+                                            bool complement = false);
+
+/// What a fitted model says of the tank, as half a sentence of HTML with its 95 % intervals: "31 to
+/// 38 % of the nominal volume stands still, exchanging 41 to 54 m3/d with the mixed rest". User
+/// networks: their fitted quantities one by one.
+[[nodiscard]] std::string model_in_words(const network::ModelFit& fit,
+                                         const network::TracerTest& test);
+
+/// "18.2 +- 0.4 d"; without an error (not finite, or not > 0) the value alone.
+[[nodiscard]] std::string with_error(double value, double error, const std::string& unit);
+
+}  // namespace stillzone::cli
