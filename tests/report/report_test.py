@@ -128,7 +128,7 @@ def main():
     with tempfile.TemporaryDirectory() as folder:
         subprocess.run([sys.argv[1], folder], check=True)
         pages = sorted(pathlib.Path(folder).glob("*.html"))
-        check(len(pages) == 4, "sample pages", f"{len(pages)} written")
+        check(len(pages) == 6, "sample pages", f"{len(pages)} written")
         for case in ("pulse_feeding", "short_circuit_stagnant"):
             out = pathlib.Path(folder) / case
             subprocess.run([sys.argv[2], "run", f"{sys.argv[3]}/{case}.json", "--quiet", "--out", out],

@@ -1,7 +1,8 @@
 // Writes report pages of invented results for the browser test:
 //   report_sample_pages FOLDER
 // three.html (the shipped three-zone case), two.html, thirty.html (networks of 2 and 30 zones) and
-// long.html (200 days of 10 zones, recorded every 15 minutes).
+// long.html (200 days of 10 zones, recorded every 15 minutes); tracer.html (two regions, variable
+// flow, tail under the detection limit) and step.html (a step test).
 #include <fmt/format.h>
 
 #include <cmath>
@@ -12,6 +13,7 @@
 
 #include "cli/report/run_report.hpp"
 #include "core/units.hpp"
+#include "tests/unit/cli/tracer_sample_support.hpp"
 
 namespace {
 
@@ -120,6 +122,12 @@ bool write(const std::string& path, std::optional<core::JsonDocument> document,
   return true;
 }
 
+bool write_tracer(const std::string& path, const std::unique_ptr<cli::TracerSampleCase>& sample) {
+  if (!sample) return false;
+  std::ofstream(path) << cli::tracer_report_page(sample->input());
+  return true;
+}
+
 }  // namespace
 
 int main(int argc, char** argv) {
@@ -135,6 +143,9 @@ int main(int argc, char** argv) {
   const std::string three = std::string(STILLZONE_SOURCE_DIR) + "/cases/three_zone_example.json";
   const bool done =
       write(folder + "three.html", core::JsonDocument::read(three, faults), faults, 240, 60.0) &&
-      row("two", 1, 1, 0, 0.0) && row("thirty", 20, 10, 0, 0.0) && row("long", 7, 3, 19201, 200.0);
+      row("two", 1, 1, 0, 0.0) && row("thirty", 20, 10, 0, 0.0) &&
+      row("long", 7, 3, 19201, 200.0) &&
+      write_tracer(folder + "tracer.html", cli::two_region_sample()) &&
+      write_tracer(folder + "step.html", cli::step_sample());
   return done ? 0 : 1;
 }

@@ -1,0 +1,32 @@
+#pragma once
+
+#include <memory>
+#include <string>
+
+#include "cli/report/tracer_report.hpp"
+
+namespace stillzone::cli {
+
+/// An invented lithium test and its analysis, as the command would hand them to the report.
+struct TracerSampleCase {
+  std::string text;  ///< of the test document
+  network::TracerTest test;
+  network::TracerAnalysis analysis;
+  std::vector<std::string> remarks;
+  [[nodiscard]] TracerReportInput input() const {
+    return {test, analysis, {"test", "invented_test.json", text, "none", "no date"}, remarks};
+  }
+};
+
+/// 3000 m3, of which 35 % stand still and exchange 45 m3/d; flow that varies around 150 m3/d; 24 kg
+/// of lithium; 92 % recovered; 40 samples with an error of 0.1 g/m3 and 2 %; the last ones under
+/// the detection limit of 0.3 g/m3; 4 samples before the dose.
+std::unique_ptr<TracerSampleCase> two_region_sample();
+
+/// Three samples: no model can be fitted, no moments.
+std::unique_ptr<TracerSampleCase> too_few_samples();
+
+/// A step in the feed of one mixed tank at constant flow.
+std::unique_ptr<TracerSampleCase> step_sample();
+
+}  // namespace stillzone::cli
