@@ -202,6 +202,27 @@ class Drawing {
                          room.label_width, room.label_height});
     }
     width_ = layout_.width + 2.0 * kPad;
+    if (drawing_.domes.empty()) lift();
+  }
+
+  /// Takes away the empty room above the highest box, which the layout keeps for evenness.
+  void lift() {
+    double top = top_ + layout_.height;
+    for (const Rect& rect : rects_) top = std::min(top, rect.y);
+    for (const Rect& label : labels_) top = std::min(top, label.y);
+    for (const auto& way : layout_.arrows) {
+      for (const LayoutPoint& p : way) top = std::min(top, p.y - 8.0);
+    }
+    const double by = std::max(0.0, top - kPad);
+    top_ -= by;
+    for (LayoutPoint& middle : layout_.boxes) middle.y -= by;
+    for (LayoutPoint& label : layout_.labels) label.y -= by;
+    for (auto& way : layout_.arrows) {
+      for (LayoutPoint& p : way) p.y -= by;
+    }
+    for (auto* rects : {&rects_, &rooms_, &labels_}) {
+      for (Rect& rect : *rects) rect.y -= by;
+    }
   }
 
   static std::string flow_words(const NetworkDrawing::Arrow& arrow) {

@@ -114,32 +114,70 @@ Chart curve_chart(const TracerReportInput& input, std::size_t p) {
   return chart;
 }
 
-/// The same on a logarithmic scale: from half of the lowest positive sample or limit up.
-std::optional<Chart> logarithmic(Chart chart) {
+/// What a curve still lacks of the step: its own level less the curve.
+void turn_to_missing(const TracerReportInput& input, double concentration, Chart& chart) {
+  const auto& models = input.analysis.models;
+  const double seen = models.empty() ? 1.0 : models.front().fit.recovered_fraction();
+  for (std::size_t s = 0; s < chart.series.size(); ++s) {
+    ChartSeries& series = chart.series[s];
+    const bool is_fit = series.kind == ChartSeries::Kind::line;
+    const double level =
+        concentration * (is_fit ? models[series.style].fit.recovered_fraction() : seen);
+    for (ChartPoint& point : series.points) point.y = level - point.y;
+    for (double& low : series.low) low = level - low;
+    for (double& high : series.high) high = level - high;
+    std::swap(series.low, series.high);
+    series.upper_limits = false;
+  }
+  chart.title = "Tracer still missing of the step";
+  chart.y.title = "missing of the step";
+}
+
+/// The same on a logarithmic scale: from half of the lowest positive sample or limit up, of a step
+/// what is still missing from it, down to the error of a sample.
+std::optional<Chart> logarithmic(const TracerReportInput& input, Chart chart) {
+  std::erase_if(chart.series,
+                [](const ChartSeries& series) { return series.name == "before the dose"; });
   double lowest = std::numeric_limits<double>::infinity();
+  if (const auto* step = std::get_if<network::StepDose>(&input.test.dose)) {
+    turn_to_missing(input, step->concentration, chart);
+  }
   for (const ChartSeries& series : chart.series) {
-    if (series.kind != ChartSeries::Kind::points || series.name == "before the dose") continue;
-    for (const ChartPoint& point : series.points) {
-      if (point.y > 0.0) lowest = std::min(lowest, point.y);
+    if (series.kind != ChartSeries::Kind::points) continue;
+    for (std::size_t i = 0; i < series.points.size(); ++i) {
+      const double error = 0.5 * (series.high[i] - series.low[i]);
+      const double y = std::max(series.points[i].y, error);
+      if (y > 0.0) lowest = std::min(lowest, y);
     }
   }
   if (!std::isfinite(lowest)) return std::nullopt;
   const double floor = 0.5 * lowest;
   chart.y.logarithmic = true;
   chart.y.low = floor;
-  std::erase_if(chart.series,
-                [](const ChartSeries& series) { return series.name == "before the dose"; });
   for (ChartSeries& series : chart.series) {
-    if (series.kind == ChartSeries::Kind::line) {
-      std::erase_if(series.points, [&](const ChartPoint& point) { return point.y < floor; });
-    }
+    const auto below = [&](const ChartPoint& point) { return point.y < floor; };
+    if (series.kind == ChartSeries::Kind::line) std::erase_if(series.points, below);
     for (double& low : series.low) low = std::max(low, floor);
-    for (std::size_t i = 0; i < series.high.size(); ++i) {
-      series.high[i] = std::max(series.high[i], floor);
-      if (series.points[i].y <= 0.0) series.points[i].y = 0.0;  // left out by the scale
+    for (double& high : series.high) high = std::max(high, floor);
+    for (ChartPoint& point : series.points) {
+      if (point.y < floor) point.y = 0.0;  // left out by the scale
     }
   }
   return chart;
+}
+
+std::string logarithmic_words(const TracerTest& test) {
+  std::string words = std::holds_alternative<network::StepDose>(test.dose)
+                          ? "<b>What is still missing of the step, on a logarithmic scale</b>"
+                          : "<b>The same on a logarithmic scale</b>";
+  words +=
+      ": one mixed tank falls along a straight line; a bend to a slower fall is water that stood "
+      "still. What lies below the scale is not drawn.";
+  if (test.flow_record) {
+    words +=
+        " The flow varied, so that even one mixed tank does not fall along a quite straight line.";
+  }
+  return words;
 }
 
 std::string censored_words(const network::SamplingPoint& point) {
@@ -151,46 +189,76 @@ std::string censored_words(const network::SamplingPoint& point) {
       n, point.samples.size());
 }
 
-std::string residual_figure(const TracerReportInput& input, std::size_t p) {
-  Chart chart;
-  const auto& at = input.test.points[p].at;
-  chart.title = "Residuals at " + at;
-  chart.x = {"time", "d", false, {}, {}};
-  chart.y = {"(fitted \u2212 measured) / error", "", false, {}, {}};
-  const auto& models = input.analysis.models;
+/// Every sample beside every model drawn, as CSV.
+std::string residuals_csv(const TracerReportInput& input, std::size_t p) {
   std::vector<std::vector<std::string>> rows;
   for (std::size_t m = 0; m < n_shown(input); ++m) {
-    ChartSeries series;
-    series.name = models[m].fit.name;
-    series.kind = ChartSeries::Kind::points;
-    series.style = m;
-    for (const network::FittedSample& s : models[m].fit.samples) {
+    const auto& fit = input.analysis.models[m].fit;
+    for (const network::FittedSample& s : fit.samples) {
       if (s.point != p) continue;
-      rows.push_back({series.name, fmt::format("{:.6g}", s.time), s.censored ? "yes" : "no",
+      rows.push_back({fit.name, fmt::format("{:.6g}", s.time), s.censored ? "yes" : "no",
                       fmt::format("{:.6g}", s.measured), fmt::format("{:.6g}", s.fitted),
                       fmt::format("{:.6g}", s.deviation), fmt::format("{:.6g}", s.residual),
                       fmt::format("{:.4g}", s.weight)});
-      if (!s.censored) series.points.push_back({s.time, s.residual});
+    }
+  }
+  return csv_of({"model", "time [d]", "under the limit", "measured, net [g/m3]",
+                 "fitted, net [g/m3]", "error in the fit [g/m3]", "residual", "weight"},
+                rows);
+}
+
+/// Residuals of the quantified samples against time or fitted value; the best model lies on top.
+Chart residual_chart(const TracerReportInput& input, std::size_t p, bool against_time) {
+  Chart chart;
+  chart.title = "Residuals at " + input.test.points[p].at;
+  chart.x = against_time ? ChartAxis{"time", "d", false, {}, {}}
+                         : ChartAxis{"fitted value", "g/m\u00B3", true, {}, {}};
+  chart.y = {"(fitted \u2212 measured) / error", "", false, {}, {}};
+  double from = std::numeric_limits<double>::infinity();
+  double to = -from;
+  for (std::size_t m = n_shown(input); m-- > 0;) {
+    ChartSeries series;
+    series.name = input.analysis.models[m].fit.name;
+    series.kind = ChartSeries::Kind::points;
+    series.style = m;
+    for (const network::FittedSample& s : input.analysis.models[m].fit.samples) {
+      const double x = against_time ? s.time : s.fitted;
+      if (s.point != p || s.censored || (!against_time && !(x > 0.0))) continue;
+      series.points.push_back({x, s.residual});
+      from = std::min(from, x);
+      to = std::max(to, x);
     }
     chart.series.push_back(std::move(series));
   }
-  const double from = input.test.dose_at;
-  const double to = last_time(input.test);
-  chart.series.push_back({.name = "within 2 errors",
-                          .kind = ChartSeries::Kind::band,
-                          .points = {{from, 0.0}, {to, 0.0}},
-                          .low = {-2.0, -2.0},
-                          .high = {2.0, 2.0},
-                          .style = 7});
-  return html_figure(
-      fmt::format("residuals-{}", at), svg_of(chart),
+  if (!(from < to)) return chart;
+  ChartSeries band;
+  band.name = "within 2 errors";
+  band.kind = ChartSeries::Kind::band;
+  band.points = {{from, 0.0}, {to, 0.0}};
+  band.low = {-2.0, -2.0};
+  band.high = {2.0, 2.0};
+  band.style = 7;
+  chart.series.push_back(std::move(band));
+  return chart;
+}
+
+std::string residual_figures(const TracerReportInput& input, std::size_t p) {
+  const std::string& at = input.test.points[p].at;
+  const std::string csv = residuals_csv(input, p);
+  std::string html = html_figure(
+      fmt::format("residuals-{}", at), svg_of(residual_chart(input, p, true)),
       fmt::format("<b>Residuals at {}</b> in units of the error each sample has in the fit; above "
-                  "0 the fit lies higher than the sample. Samples under the limit are left out "
-                  "here and are in the CSV.",
+                  "0 the fit lies higher than the sample. Long runs on one side say that the curve "
+                  "has another shape. Samples under the limit are left out here and are in the "
+                  "CSV.",
                   html_escaped(at)),
-      csv_of({"model", "time [d]", "under the limit", "measured, net [g/m3]", "fitted, net [g/m3]",
-              "error in the fit [g/m3]", "residual", "weight"},
-             rows));
+      csv);
+  html +=
+      html_figure(fmt::format("residuals-by-value-{}", at), svg_of(residual_chart(input, p, false)),
+                  "<b>The same against the fitted value</b>: residuals that widen to one side "
+                  "say that the stated error is wrong there.",
+                  csv);
+  return html;
 }
 
 }  // namespace
@@ -201,22 +269,16 @@ std::string tracer_curve_section(const TracerReportInput& input) {
     const auto& point = input.test.points[p];
     const Chart chart = curve_chart(input, p);
     const std::string caption = fmt::format(
-        "<b>{} at {}</b>, background taken off. Bars: one standard deviation, as stated. {}{}",
+        "<b>Tracer ({}) at {}</b>, background taken off. Bars: one standard deviation, as stated. "
+        "{}{}",
         html_escaped(input.test.tracer), html_escaped(point.at),
         n_shown(input) > 0 ? "Curves: the best models, drawn on past the last sample." : "",
         censored_words(point));
     std::string charts =
         html_figure(fmt::format("curve-{}", point.at), svg_of(chart), caption, csv_of(chart));
-    if (const auto log_chart = logarithmic(chart)) {
-      charts += html_figure(
-          fmt::format("curve-log-{}", point.at), svg_of(*log_chart),
-          fmt::format("<b>The same on a logarithmic scale</b>: one mixed tank falls along a "
-                      "straight line; a bend to a slower fall is water that stood still. Values "
-                      "not above 0 cannot be drawn here.{}",
-                      input.test.flow_record ? " The flow varied, so that even one mixed tank "
-                                               "does not fall along a quite straight line."
-                                             : ""),
-          csv_of(*log_chart));
+    if (const auto log_chart = logarithmic(input, chart)) {
+      charts += html_figure(fmt::format("curve-log-{}", point.at), svg_of(*log_chart),
+                            logarithmic_words(input.test), csv_of(*log_chart));
     }
     html += "<div class=charts>" + charts + "</div>\n";
   }
@@ -225,7 +287,9 @@ std::string tracer_curve_section(const TracerReportInput& input) {
 
 std::string tracer_residual_section(const TracerReportInput& input) {
   std::string html = "<div class=charts>";
-  for (std::size_t p = 0; p < input.test.points.size(); ++p) html += residual_figure(input, p);
+  for (std::size_t p = 0; p < input.test.points.size(); ++p) {
+    html += residual_figures(input, p);
+  }
   html += "</div>\n";
   HtmlTable table;
   table.head = {"Model", "Runs of one sign", "Chance of so few\n%", "Chance of such scatter\n%",

@@ -76,9 +76,6 @@ std::string moments_of(const TracerReportInput& input, const network::PointResul
   html += fmt::format("<p>Nominal retention time (HRT) {} d. Integration rule: <b>{}</b>. Tail: {}",
                       brief(m.hydraulic_retention_time, 4),
                       html_escaped(network::rule_name(m.curve.rule())), html_escaped(m.tail.note));
-  if (m.tail.rate > 0.0) {
-    html += fmt::format(" (rate {})", with_error(m.tail.rate, m.tail.rate_error, "1/d"));
-  }
   html += ".</p>\n";
   html += m.errors.n_draws > 0
               ? fmt::format(
@@ -93,63 +90,79 @@ std::string moments_of(const TracerReportInput& input, const network::PointResul
   return html;
 }
 
+/// A share as %, "< 0.0001" where it is as good as nothing.
+std::string percent(double share) {
+  if (share >= 0.0 && share < 1e-6) return "< 0.0001";
+  return brief(100.0 * share, 3);
+}
+
+std::string percent(const network::Estimate& share) {
+  return with_error(100.0 * share.value, 100.0 * share.standard_error, "");
+}
+
+/// Adds a row: name, then one cell per column of the table's head.
+template <class List, class Cell>
+void add_row(HtmlTable& table, const std::string& name, const List& list, const Cell& cell) {
+  table.rows.push_back({name});
+  for (std::size_t i = 0; i < list.size(); ++i) table.rows.back().push_back(cell(list[i], i));
+}
+
 HtmlTable first_order_table(const TracerReportInput& input) {
+  const auto& rows = input.analysis.conversion;
   HtmlTable table;
   table.caption = "Left of a first-order decay, % of what is fed";
-  table.head = {"Rate\n1/d", "One ideal tank", "Plug flow", "Samples"};
-  for (const RankedModel& model : input.analysis.models) table.head.push_back(model.fit.name);
-  for (std::size_t k = 0; k < input.analysis.conversion.size(); ++k) {
-    const auto& row = input.analysis.conversion[k];
-    std::vector<std::string> cells{brief(row.rate, 3), brief(100.0 * row.ideal_tank, 3),
-                                   brief(100.0 * row.plug_flow, 3), brief(100.0 * row.data, 3)};
-    for (const RankedModel& model : input.analysis.models) {
-      const auto& left = model.insight.left[k];
-      cells.push_back(with_error(100.0 * left.value, 100.0 * left.standard_error, ""));
-    }
-    table.rows.push_back(std::move(cells));
+  table.head = {"At the rate"};
+  for (const auto& row : rows) table.head.push_back(brief(row.rate, 3) + " 1/d");
+  using Row = network::ConversionRow;
+  add_row(table, "one ideal tank", rows,
+          [](const Row& r, std::size_t) { return percent(r.ideal_tank); });
+  add_row(table, "plug flow", rows, [](const Row& r, std::size_t) { return percent(r.plug_flow); });
+  add_row(table, "the samples", rows, [](const Row& r, std::size_t) { return percent(r.data); });
+  for (const RankedModel& model : input.analysis.models) {
+    add_row(table, model.fit.name, rows,
+            [&](const Row&, std::size_t k) { return percent(model.insight.left[k]); });
   }
   return table;
 }
 
 HtmlTable second_order_table(const TracerReportInput& input) {
+  const auto& rows = input.analysis.conversion;
   HtmlTable table;
   table.caption =
-      "Left of a second-order decay, % of what is fed: between water that stays apart until it "
-      "leaves (segregated) and water that mixes as early as its ages allow (maximum mixedness)";
-  table.head = {"k c\u2080\n1/d", "One ideal tank", "Samples"};
-  const std::size_t n = std::min(kModelsShown, input.analysis.models.size());
-  for (std::size_t m = 0; m < n; ++m) table.head.push_back(input.analysis.models[m].fit.name);
+      "Left of a second-order decay, % of what is fed: from maximum mixedness to segregation";
+  table.head = {"At k c\u2080"};
+  for (const auto& row : rows) table.head.push_back(brief(row.rate, 3) + " 1/d");
   const auto bounds = [](double a, double b) {
     if (!std::isfinite(a) || !std::isfinite(b)) return std::string("n/a");
-    return brief(100.0 * std::min(a, b), 3) + " to " + brief(100.0 * std::max(a, b), 3);
+    return percent(std::min(a, b)) + " to " + percent(std::max(a, b));
   };
-  for (std::size_t k = 0; k < input.analysis.conversion.size(); ++k) {
-    const auto& row = input.analysis.conversion[k];
-    std::vector<std::string> cells{brief(row.rate, 3), brief(100.0 * row.ideal_second_order, 3),
-                                   bounds(row.data_segregated, row.data_maximum_mixed)};
-    for (std::size_t m = 0; m < n; ++m) {
-      const auto& insight = input.analysis.models[m].insight;
-      cells.push_back(bounds(insight.left_segregated[k], insight.left_maximum_mixed[k]));
-    }
-    table.rows.push_back(std::move(cells));
+  using Row = network::ConversionRow;
+  add_row(table, "one ideal tank", rows,
+          [](const Row& r, std::size_t) { return percent(r.ideal_second_order); });
+  add_row(table, "the samples", rows, [&](const Row& r, std::size_t) {
+    return bounds(r.data_segregated, r.data_maximum_mixed);
+  });
+  for (const RankedModel& model : input.analysis.models) {
+    add_row(table, model.fit.name, rows, [&](const Row&, std::size_t k) {
+      return bounds(model.insight.left_segregated[k], model.insight.left_maximum_mixed[k]);
+    });
   }
   return table;
 }
 
 HtmlTable young_table(const TracerReportInput& input) {
+  const auto& rows = input.analysis.young;
   HtmlTable table;
   table.caption = "Share of the feed that leaves younger than an age, %";
-  table.head = {"Age\nd", "One ideal tank", "Samples"};
-  for (const RankedModel& model : input.analysis.models) table.head.push_back(model.fit.name);
-  for (std::size_t a = 0; a < input.analysis.young.size(); ++a) {
-    const auto& row = input.analysis.young[a];
-    std::vector<std::string> cells{brief(row.age, 3), brief(100.0 * row.ideal_tank, 3),
-                                   brief(100.0 * row.data, 3)};
-    for (const RankedModel& model : input.analysis.models) {
-      const auto& younger = model.insight.younger[a];
-      cells.push_back(with_error(100.0 * younger.value, 100.0 * younger.standard_error, ""));
-    }
-    table.rows.push_back(std::move(cells));
+  table.head = {"Younger than"};
+  for (const auto& row : rows) table.head.push_back(brief(row.age, 3) + " d");
+  using Row = network::YoungRow;
+  add_row(table, "one ideal tank", rows,
+          [](const Row& r, std::size_t) { return percent(r.ideal_tank); });
+  add_row(table, "the samples", rows, [](const Row& r, std::size_t) { return percent(r.data); });
+  for (const RankedModel& model : input.analysis.models) {
+    add_row(table, model.fit.name, rows,
+            [&](const Row&, std::size_t a) { return percent(model.insight.younger[a]); });
   }
   return table;
 }
@@ -168,7 +181,10 @@ std::string tracer_mixing_section(const TracerReportInput& input) {
   return "<p>Whatever the flow pattern, a first-order reaction (hydrolysis, die-off) sees the "
          "residence times only, so this follows from the tracer without any assumption about the "
          "mixing inside (Danckwerts 1953). Second-order reactions also see how early the water "
-         "mixes; the two bounds are those of Zwietering (1959).</p>\n" +
+         "mixes: they end between water that stays apart until it leaves (segregated) and water "
+         "that "
+         "mixes as early as its ages allow (maximum mixedness, Zwietering 1959); c\u2080 is the "
+         "concentration fed.</p>\n" +
          html_of(first_order_table(input)) + html_of(second_order_table(input)) +
          html_of(young_table(input)) +
          "<p class=note>\u00B1: one standard error from the fit; none where the fit gives none. "

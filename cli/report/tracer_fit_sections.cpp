@@ -19,6 +19,14 @@ using network::FittedParameter;
 using network::ModelFit;
 using network::ZoneLayout;
 
+/// Fixed decimals and a true minus sign.
+std::string fixed(double value, int decimals) {
+  if (!std::isfinite(value)) return "n/a";
+  const std::string text = fmt::format("{:.{}f}", std::fabs(value), decimals);
+  const bool zero = text.find_first_not_of("0.") == std::string::npos;
+  return (value < 0.0 && !zero ? "\u2212" : "") + text;
+}
+
 std::string limit(const std::optional<double>& end) { return end ? shown(*end) : "none"; }
 
 HtmlTable parameter_table(const ModelFit& fit) {
@@ -29,7 +37,7 @@ HtmlTable parameter_table(const ModelFit& fit) {
   for (const FittedParameter& p : fit.parameters) {
     std::string verdict = p.verdict;
     if (p.at_bound) verdict += " (at the bound of the search)";
-    table.rows.push_back({p.name, p.unit == "1" ? "" : p.unit, shown(p.value),
+    table.rows.push_back({p.name, unit_shown(p.unit), shown(p.value),
                           std::isfinite(p.standard_error) ? shown(p.standard_error, 2) : "unknown",
                           limit(p.low), limit(p.high), verdict, p.meaning});
   }
@@ -38,13 +46,12 @@ HtmlTable parameter_table(const ModelFit& fit) {
 
 HtmlTable correlation_table(const ModelFit& fit) {
   HtmlTable table;
-  table.caption = "Correlation";
   table.head = {""};
   const std::size_t n = fit.parameters.size();
   for (std::size_t a = 0; a < n; ++a) {
     table.head.push_back(fit.parameters[a].name);
     std::vector<std::string> row{fit.parameters[a].name};
-    for (std::size_t b = 0; b < n; ++b) row.push_back(shown(fit.correlation[a * n + b], 3));
+    for (std::size_t b = 0; b < n; ++b) row.push_back(fixed(fit.correlation[a * n + b], 2));
     table.rows.push_back(std::move(row));
   }
   return table;
@@ -60,7 +67,10 @@ std::string parameters_of(const network::RankedModel& ranked, const network::Tra
     html += "</ul>\n";
   }
   const std::size_t n = fit.parameters.size();
-  if (n > 1 && fit.correlation.size() == n * n) html += html_of(correlation_table(fit));
+  if (n > 1 && fit.correlation.size() == n * n) {
+    html += "<details><summary>Correlation of its parameters</summary>" +
+            html_of(correlation_table(fit)) + "</details>\n";
+  }
   return html;
 }
 
@@ -85,8 +95,17 @@ std::vector<double> flows_of(const ZoneLayout& layout, double feed) {
   return flows;
 }
 
-NetworkDrawing drawing_of(const ZoneLayout& layout, const std::vector<double>& flows,
-                          const network::TracerTest& test) {
+/// Whether the volume in use lies below the nominal one with its whole interval.
+bool dead_volume_seen(const ModelFit& fit, double nominal) {
+  for (const FittedParameter& p : fit.parameters) {
+    if (p.name == "volume") return p.high && *p.high < nominal;
+    if (p.name == "mixed_fraction") return p.high && *p.high < 1.0;
+  }
+  return false;
+}
+
+NetworkDrawing drawing_of(const ModelFit& fit, const ZoneLayout& layout,
+                          const std::vector<double>& flows, const network::TracerTest& test) {
   const double nominal = test.volume.value();
   NetworkDrawing drawing;
   std::map<std::string, std::size_t> box_of;
@@ -110,7 +129,7 @@ NetworkDrawing drawing_of(const ZoneLayout& layout, const std::vector<double>& f
     used += zone.volume.value;
     add(std::move(box));
   }
-  if (used < 0.995 * nominal) {
+  if (used < 0.995 * nominal && dead_volume_seen(fit, nominal)) {
     NetworkDrawing::Box dead;
     dead.name = "dead";
     dead.volume = nominal - used;
@@ -157,6 +176,12 @@ std::string network_of(const network::RankedModel& ranked, const network::Tracer
                        html_escaped(layout.failure().text()));
   }
   const std::vector<double> flows = flows_of(layout.value(), test.mean_flow.value());
+  std::vector<std::string> notes = layout.value().notes;
+  double used = 0.0;
+  for (const auto& zone : layout.value().zones) used += zone.volume.value;
+  if (used < 0.995 * test.volume.value() && !dead_volume_seen(fit, test.volume.value())) {
+    notes.emplace_back("The test does not tell it from none, so it is not drawn");
+  }
   std::vector<std::vector<std::string>> rows;
   for (const auto& zone : layout.value().zones) {
     rows.push_back({"zone", zone.name, "", zone.still ? "stagnant" : "mixed",
@@ -168,11 +193,11 @@ std::string network_of(const network::RankedModel& ranked, const network::Tracer
                     fmt::format("{:.6g}", flows[f]), "m3/d"});
   }
   return html_figure(
-      "network-" + fit.name, svg_of(drawing_of(layout.value(), flows, test)),
+      "network-" + fit.name, svg_of(drawing_of(fit, layout.value(), flows, test)),
       fmt::format("<b>{}</b>: {} (weight {} %). Volumes with their share of the nominal volume; "
                   "hatched: stagnant or dead.{}",
                   name, html_escaped(fit.meaning), brief(100.0 * fit.weight, 2),
-                  layout_words(layout.value().notes)),
+                  layout_words(notes)),
       csv_of({"what", "zone or from", "to", "kind", "value", "unit"}, rows));
 }
 
@@ -189,11 +214,10 @@ std::string tracer_ranking_section(const TracerReportInput& input) {
     table.left = {true, true};
     for (const auto& ranked : models) {
       const ModelFit& fit = ranked.fit;
-      table.rows.push_back({fit.name, fit.meaning, fmt::format("{:.1f}", fit.aicc),
-                            fmt::format("{:.1f}", fit.aicc - models.front().fit.aicc),
-                            fmt::format("{:.1f}", 100.0 * fit.weight), shown(fit.rmse, 3),
-                            fmt::format("{:.2f}", fit.residual_deviation),
-                            fmt::format("{} of {}", fit.starts_agreeing, fit.starts_tried)});
+      table.rows.push_back(
+          {fit.name, fit.meaning, fixed(fit.aicc, 1), fixed(fit.aicc - models.front().fit.aicc, 1),
+           fixed(100.0 * fit.weight, 1), shown(fit.rmse, 3), fixed(fit.residual_deviation, 2),
+           fmt::format("{} of {}", fit.starts_agreeing, fit.starts_tried)});
     }
     html += html_of(table) +
             "<p class=note>AICc: corrected Akaike criterion (Hurvich and Tsai 1989), smaller is "
@@ -222,7 +246,8 @@ std::string tracer_parameter_section(const TracerReportInput& input) {
         fmt::format("<h3>{}. {}: {}</h3>\n", m + 1, html_escaped(ranked.fit.name),
                     html_escaped(ranked.fit.meaning)) +
         parameters_of(ranked, input.test) +
-        fmt::format("<p class=note>Model: {}.</p>\n", html_escaped(ranked.fit.source));
+        fmt::format("<p class=note>Source of the model: {}.</p>\n",
+                    html_escaped(ranked.fit.source));
     (m < kModelsShown ? html : others) += block;
   }
   if (others.empty()) return html;

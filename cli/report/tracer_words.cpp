@@ -23,7 +23,8 @@ int decimals_for(double width) {
 }
 
 std::string joined(const std::string& number, const std::string& unit) {
-  return unit.empty() ? number : number + " " + unit;
+  const std::string text = unit_shown(unit);
+  return text.empty() ? number : number + "\u00A0" + text;
 }
 
 const FittedParameter& parameter(const ModelFit& fit, const char* name) {
@@ -74,12 +75,22 @@ std::string listed(const ModelFit& fit) {
   for (const FittedParameter& p : fit.parameters) {
     if (p.name == "recovered_fraction") continue;
     words += fmt::format("{}{} <b>{}</b>", words.empty() ? "" : ", ", html_escaped(p.name),
-                         html_escaped(interval_in_words(p, 1.0, p.unit == "1" ? "" : p.unit)));
+                         html_escaped(interval_in_words(p, 1.0, p.unit)));
   }
   return words.empty() ? "nothing of it was free but the recovery" : words;
 }
 
 }  // namespace
+
+std::string unit_shown(const std::string& unit) {
+  if (unit == "1") return "";
+  std::string text = unit;
+  for (const auto& [plain, raised] : {std::pair{"m3", "m\u00B3"}, std::pair{"d2", "d\u00B2"}}) {
+    const auto at = text.find(plain);
+    if (at != std::string::npos) text.replace(at, 2, raised);
+  }
+  return text;
+}
 
 std::string range_in_words(std::optional<double> low, std::optional<double> high, double value,
                            const std::string& unit) {
@@ -109,7 +120,8 @@ std::string interval_in_words(const FittedParameter& parameter, double factor,
 
 std::string model_in_words(const ModelFit& fit, const TracerTest& test) {
   const std::string& name = fit.name;
-  if (name == "one_tank") return "it works as one well-mixed tank of " + volume_words(fit, test);
+  if (name == "one_tank")
+    return "the tank works as one well-mixed tank of " + volume_words(fit, test);
   if (name == "tanks_in_series") {
     return fmt::format("the water passes {} of {} in all", tanks_words(fit),
                        volume_words(fit, test));

@@ -8,6 +8,9 @@
 
 namespace stillzone::cli {
 
+/// A unit with raised figures, "m3/d" as it is written by hand; "1" as nothing.
+[[nodiscard]] std::string unit_shown(const std::string& unit);
+
 /// A range as people read it: "31 to 38 %", "at most 38 %", "at least 31 %"; without an end
 /// "about 34 % (not held by this test)". As many decimals as its width needs.
 /// @param unit after the numbers; empty: none

@@ -145,7 +145,7 @@ int main(int argc, char** argv) {
       write(folder + "three.html", core::JsonDocument::read(three, faults), faults, 240, 60.0) &&
       row("two", 1, 1, 0, 0.0) && row("thirty", 20, 10, 0, 0.0) &&
       row("long", 7, 3, 19201, 200.0) &&
-      write_tracer(folder + "tracer.html", cli::two_region_sample()) &&
+      write_tracer(folder + "tracer.html", cli::two_region_sample({})) &&
       write_tracer(folder + "step.html", cli::step_sample());
   return done ? 0 : 1;
 }

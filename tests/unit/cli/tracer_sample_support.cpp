@@ -64,7 +64,7 @@ void analyse(TracerSampleCase& sample) {
   sample.remarks = {"An invented remark of the command with <tags> & signs."};
 }
 
-std::string pulse_test(const char* models) {
+std::string pulse_test(const std::string& models) {
   return fmt::format(
       R"({{
   "stillzone": "test/1",
@@ -78,7 +78,7 @@ std::string pulse_test(const char* models) {
   "recovery": "fitted"{}
 }}
 )",
-      models);
+      models.empty() ? "" : ",\n  \"models\": " + models);
 }
 
 /// Flow of a day, m3/d.
@@ -94,10 +94,10 @@ std::string flow_record() {
 
 }  // namespace
 
-std::unique_ptr<TracerSampleCase> two_region_sample() {
+std::unique_ptr<TracerSampleCase> two_region_sample(const std::string& models) {
   // Read once with any samples for the clock and the dose, then with those made by the model.
   const std::string before = "t,li\n-3,0.20\n-2,0.24\n-1,0.17\n-0.2,0.22\n";
-  const std::string text = pulse_test("");
+  const std::string text = pulse_test(models);
   const auto blank = read(text, before + "1,5\n2,5\n3,5\n4,5\n5,5\n", flow_record());
   if (!blank) return nullptr;
   const auto model = network::make_candidate("stagnant_exchange", blank->test);

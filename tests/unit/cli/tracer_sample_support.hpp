@@ -21,7 +21,8 @@ struct TracerSampleCase {
 /// 3000 m3, of which 35 % stand still and exchange 45 m3/d; flow that varies around 150 m3/d; 24 kg
 /// of lithium; 92 % recovered; 40 samples with an error of 0.1 g/m3 and 2 %; the last ones under
 /// the detection limit of 0.3 g/m3; 4 samples before the dose.
-std::unique_ptr<TracerSampleCase> two_region_sample();
+/// @param models the list of the document (JSON); empty: all, which takes long to fit
+std::unique_ptr<TracerSampleCase> two_region_sample(const std::string& models);
 
 /// Three samples: no model can be fitted, no moments.
 std::unique_ptr<TracerSampleCase> too_few_samples();
