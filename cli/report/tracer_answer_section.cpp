@@ -68,47 +68,64 @@ std::string recovery_sentence(const TracerReportInput& input) {
   return sentence + ".";
 }
 
+/// When the first tenth of the feed has left: from the samples, or where they begin too late for
+/// that, from the best model.
+struct FirstTenth {
+  double age = 0.0;  ///< [d]; NaN: not known
+  std::string words;
+};
+FirstTenth first_tenth(const TracerReportInput& input, double nominal) {
+  const auto& point = input.analysis.points.front();
+  const auto& samples = input.test.points.front().samples;
+  const bool has_model = !input.analysis.models.empty();
+  const double by_model = has_model ? input.analysis.models.front().insight.t10 : std::nan("");
+  const std::string of_model =
+      fmt::format("<b>{}\u00A0d</b> by the best model", brief(by_model, 3));
+  if (!point.moments) return {by_model, of_model};
+  const TracerMoments& moments = *point.moments;
+  const double first = samples.empty() ? 0.0 : nominal * input.test.turnovers(samples.front().time);
+  if (moments.t10 > first) {
+    return {moments.t10,
+            fmt::format("<b>{}</b>", with_error(moments.t10, moments.errors.t10, "d"))};
+  }
+  if (has_model) return {by_model, of_model + " (before the first sample)"};
+  return {std::nan(""),
+          fmt::format("at most <b>{}\u00A0d</b> (before the first sample)", brief(first, 3))};
+}
+
 std::string residence_sentence(const TracerReportInput& input) {
   const double nominal = input.test.volume.value() / input.test.mean_flow.value();
-  const double ideal_t10 = -std::log(0.9) * nominal;
+  const double ideal = -std::log(0.9) * nominal;
   const auto& point = input.analysis.points.front();
-  std::string sentence;
-  double t10 = std::nan("");
-  if (point.moments) {
-    const TracerMoments& moments = *point.moments;
-    sentence = fmt::format(
-        "The tracer stays <b>{}</b> on average, {} % of the nominal {} d, and its first tenth has "
-        "left after <b>{}</b>, where one ideally mixed tank takes {} d",
-        with_error(moments.mean, moments.errors.mean, "d"),
-        brief(100.0 * moments.active_fraction, 3), brief(nominal, 3),
-        with_error(moments.t10, moments.errors.t10, "d"), brief(ideal_t10, 3));
-    t10 = moments.t10;
-  } else if (!input.analysis.models.empty()) {
-    const auto& insight = input.analysis.models.front().insight;
-    sentence = fmt::format(
-        "By the best model the water stays <b>{} d</b> on average (nominal {} d), and its first "
-        "tenth has left after <b>{} d</b>, where one ideally mixed tank takes {} d",
-        brief(insight.mean, 3), brief(nominal, 3), brief(insight.t10, 3), brief(ideal_t10, 3));
-    t10 = insight.t10;
-  } else {
-    return fmt::format("The nominal residence time is {} d; this test adds nothing to it.",
+  if (!point.moments && input.analysis.models.empty()) {
+    return fmt::format("The nominal residence time is {}\u00A0d; this test adds nothing to it.",
                        brief(nominal, 3));
   }
-  if (t10 < 0.85 * ideal_t10) {
-    sentence += ": part of the feed leaves too early";
-  } else if (t10 > 1.15 * ideal_t10) {
-    sentence += ": the first of the feed leaves later than from a mixed tank";
+  std::string sentence;
+  if (point.moments) {
+    sentence =
+        fmt::format("The tracer stays <b>{}</b> on average, {}\u00A0% of the nominal {}\u00A0d",
+                    with_error(point.moments->mean, point.moments->errors.mean, "d"),
+                    brief(100.0 * point.moments->active_fraction, 3), brief(nominal, 3));
   } else {
-    sentence += ": near that of a mixed tank";
+    sentence = fmt::format(
+        "By the best model the water stays <b>{}\u00A0d</b> on average (nominal {}\u00A0d)",
+        brief(input.analysis.models.front().insight.mean, 3), brief(nominal, 3));
   }
-  return sentence + ".";
+  const FirstTenth tenth = first_tenth(input, nominal);
+  sentence += fmt::format(
+      ", and its first tenth has left after {}, where one ideally mixed tank takes {}\u00A0d",
+      tenth.words, brief(ideal, 3));
+  if (tenth.age < 0.85 * ideal) return sentence + ": part of the feed leaves too early.";
+  if (tenth.age > 1.15 * ideal) {
+    return sentence + ": the first of the feed leaves later than from a mixed tank.";
+  }
+  return sentence + (std::isnan(tenth.age) ? "." : ": near that of a mixed tank.");
 }
 
 std::string list_of(const std::string& heading, const std::vector<std::string>& sentences) {
   if (sentences.empty()) return "";
-  std::string html = fmt::format("<h3>{}</h3>\n<ul>", heading);
-  for (const std::string& sentence : sentences) html += "<li>" + html_escaped(sentence) + "</li>";
-  return html + "</ul>\n";
+  return fmt::format("<h3>{}</h3>\n", heading) + prose_list(sentences);
 }
 
 }  // namespace

@@ -8,6 +8,7 @@
 #include "cli/report/page.hpp"
 #include "cli/report/svg_chart.hpp"
 #include "cli/report/tracer_sections.hpp"
+#include "cli/report/tracer_words.hpp"
 
 namespace stillzone::cli {
 
@@ -16,12 +17,6 @@ namespace {
 using network::SamplingPoint;
 using network::TracerSample;
 using network::TracerTest;
-
-std::string list_of(const std::vector<std::string>& sentences) {
-  std::string html = "<ul>";
-  for (const std::string& sentence : sentences) html += "<li>" + html_escaped(sentence) + "</li>";
-  return html + "</ul>\n";
-}
 
 std::string dose_words(const TracerTest& test) {
   if (const auto* step = std::get_if<network::StepDose>(&test.dose)) {
@@ -90,7 +85,7 @@ std::string point_inputs(const SamplingPoint& point) {
       point.before.size(), point.samples.size(),
       std::ranges::count_if(point.samples, &TracerSample::censored), error_words(point),
       point.detection_limit > 0.0 ? brief(point.detection_limit) + " g/m\u00B3" : "not stated");
-  if (!point.notes.empty()) html += "<p>Cleaned:</p>" + list_of(point.notes);
+  if (!point.notes.empty()) html += "<p>Cleaned:</p>" + prose_list(point.notes);
   HtmlTable table;
   table.head = {"Time\nd", "Value\ng/m\u00B3", "Error\ng/m\u00B3", "", "Readings", "Line"};
   table.left = {false, false, false, true};
@@ -150,12 +145,13 @@ bool is_lithium(std::string tracer) {
 std::string tracer_open_section(const TracerReportInput& input) {
   std::vector<std::string> words = input.analysis.cannot_tell;
   words.insert(words.end(), input.remarks.begin(), input.remarks.end());
-  return words.empty() ? "<p>Nothing was noted.</p>\n" : list_of(words);
+  return words.empty() ? "<p>Nothing was noted.</p>\n" : prose_list(words);
 }
 
 std::string tracer_inputs_section(const TracerReportInput& input) {
   std::string html = html_of(main_inputs(input.test));
-  if (!input.test.notes.empty()) html += "<p>Noted while reading:</p>" + list_of(input.test.notes);
+  if (!input.test.notes.empty())
+    html += "<p>Noted while reading:</p>" + prose_list(input.test.notes);
   html += flow_figure(input.test);
   for (const SamplingPoint& point : input.test.points) html += point_inputs(point);
   return html;
@@ -192,7 +188,7 @@ std::string tracer_assumptions_section(const TracerReportInput& input) {
           point.at));
     }
   }
-  return list_of(words);
+  return prose_list(words);
 }
 
 std::string tracer_cautions_section(const TracerReportInput& input) {

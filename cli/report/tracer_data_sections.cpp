@@ -75,7 +75,7 @@ std::string moments_of(const TracerReportInput& input, const network::PointResul
                                 std::holds_alternative<network::StepDose>(input.test.dose)));
   html += fmt::format("<p>Nominal retention time (HRT) {} d. Integration rule: <b>{}</b>. Tail: {}",
                       brief(m.hydraulic_retention_time, 4),
-                      html_escaped(network::rule_name(m.curve.rule())), html_escaped(m.tail.note));
+                      html_escaped(network::rule_name(m.curve.rule())), prose(m.tail.note));
   html += ".</p>\n";
   html += m.errors.n_draws > 0
               ? fmt::format(
@@ -188,6 +188,8 @@ std::string tracer_mixing_section(const TracerReportInput& input) {
          html_of(first_order_table(input)) + html_of(second_order_table(input)) +
          html_of(young_table(input)) +
          "<p class=note>\u00B1: one standard error from the fit; none where the fit gives none. "
+         "n/a: "
+         "could not be computed. "
          "For pathogens: what leaves young has had little time to die.</p>\n";
 }
 

@@ -36,7 +36,8 @@ HtmlTable parameter_table(const ModelFit& fit) {
   table.left = {true, true, false, false, false, false, true, true};
   for (const FittedParameter& p : fit.parameters) {
     std::string verdict = p.verdict;
-    if (p.at_bound) verdict += " (at the bound of the search)";
+    if (p.at_bound && verdict.find("bound") == std::string::npos)
+      verdict += " (at the bound of the search)";
     table.rows.push_back({p.name, unit_shown(p.unit), shown(p.value),
                           std::isfinite(p.standard_error) ? shown(p.standard_error, 2) : "unknown",
                           limit(p.low), limit(p.high), verdict, p.meaning});
@@ -61,11 +62,7 @@ std::string parameters_of(const network::RankedModel& ranked, const network::Tra
   const ModelFit& fit = ranked.fit;
   std::string html = fmt::format("<p>In words: {}.</p>\n", model_in_words(fit, test));
   html += html_of(parameter_table(fit));
-  if (!fit.remarks.empty()) {
-    html += "<ul>";
-    for (const std::string& remark : fit.remarks) html += "<li>" + html_escaped(remark) + "</li>";
-    html += "</ul>\n";
-  }
+  if (!fit.remarks.empty()) html += prose_list(fit.remarks);
   const std::size_t n = fit.parameters.size();
   if (n > 1 && fit.correlation.size() == n * n) {
     html += "<details><summary>Correlation of its parameters</summary>" +
@@ -158,7 +155,7 @@ NetworkDrawing drawing_of(const ModelFit& fit, const ZoneLayout& layout,
 
 std::string layout_words(const std::vector<std::string>& notes) {
   std::string words;
-  for (const std::string& note : notes) words += " " + html_escaped(note) + ".";
+  for (const std::string& note : notes) words += " " + prose(note) + ".";
   return words;
 }
 

@@ -161,6 +161,24 @@ std::string model_in_words(const ModelFit& fit, const TracerTest& test) {
   return listed(fit);
 }
 
+std::string prose(const std::string& sentence) {
+  std::string html = html_escaped(sentence);
+  for (const auto& [plain, printed] :
+       {std::pair{" m3", " m\u00B3"}, std::pair{"/m3", "/m\u00B3"}, std::pair{"+-", "\u00B1"}}) {
+    const std::string from = plain;
+    for (auto at = html.find(from); at != std::string::npos; at = html.find(from, at + 1)) {
+      html.replace(at, from.size(), printed);
+    }
+  }
+  return html;
+}
+
+std::string prose_list(const std::vector<std::string>& sentences) {
+  std::string html = "<ul>";
+  for (const std::string& sentence : sentences) html += "<li>" + prose(sentence) + "</li>";
+  return html + "</ul>\n";
+}
+
 std::string with_error(double value, double error, const std::string& unit) {
   if (!std::isfinite(error) || !(error > 0.0) || !std::isfinite(value)) {
     return joined(brief(value, 3), std::isfinite(value) ? unit : "");

@@ -2,6 +2,7 @@
 
 #include <optional>
 #include <string>
+#include <vector>
 
 #include "network/tracer/model_fit.hpp"
 #include "network/tracer/tracer_test.hpp"
@@ -27,6 +28,11 @@ namespace stillzone::cli {
 /// networks: their fitted quantities one by one.
 [[nodiscard]] std::string model_in_words(const network::ModelFit& fit,
                                          const network::TracerTest& test);
+
+/// A sentence of the analysis as HTML: escaped, with raised figures and plus-minus signs.
+[[nodiscard]] std::string prose(const std::string& sentence);
+/// Sentences as a list.
+[[nodiscard]] std::string prose_list(const std::vector<std::string>& sentences);
 
 /// "18.2 +- 0.4 d"; without an error (not finite, or not > 0) the value alone.
 [[nodiscard]] std::string with_error(double value, double error, const std::string& unit);

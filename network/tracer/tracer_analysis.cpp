@@ -131,7 +131,7 @@ void say_what_is_open(const TracerTest& test, TracerAnalysis& analysis) {
   if (!rivals.empty()) {
     words.push_back(fmt::format(
         "Whether {} or {} is the right picture: their criteria differ by less than 2. Where their "
-        "answers below agree the choice does not matter; where they differ, more samples early and "
+        "answers agree the choice does not matter; where they differ, more samples early and "
         "late would tell.",
         best.name, rivals));
   }
