@@ -7,6 +7,8 @@ namespace stillzone::cli {
 std::string_view page_script() {
   return R"js(
 "use strict";
+for (const [when, open] of [["beforeprint", true], ["afterprint", false]])
+  addEventListener(when, () => { for (const d of document.querySelectorAll("details.printed")) d.open = open; });
 for (const svg of document.querySelectorAll("svg.live")) {
   const NS = "http://www.w3.org/2000/svg", plot = svg.querySelector("svg"), num = s => s.split(" ").map(Number);
   const [px, py, pw, ph] = num(svg.dataset.plot), X = num(svg.dataset.x), Y = num(svg.dataset.y);

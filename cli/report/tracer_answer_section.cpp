@@ -15,6 +15,12 @@ namespace {
 using network::RankedModel;
 using network::TracerMoments;
 
+/// Residuals in runs, or wider than the stated errors allow, at 5 %.
+bool speaks_against(const network::ModelFit& fit) {
+  const bool in_runs = fit.tests.runs_p && *fit.tests.runs_p < 0.05;
+  return in_runs || (fit.tests.scatter_p < 0.05 && fit.residual_deviation > 1.0);
+}
+
 std::string model_sentence(const TracerReportInput& input) {
   const auto& models = input.analysis.models;
   if (models.empty()) {
@@ -35,6 +41,10 @@ std::string model_sentence(const TracerReportInput& input) {
   if (!rivals.empty()) {
     sentence += fmt::format("; {} explain{} them about as well", rivals,
                             rivals.find(',') == std::string::npos ? "s" : "");
+  }
+  if (speaks_against(best.fit)) {
+    sentence += models.size() > 1 ? "; yet even its residuals speak against it (see the verdict)"
+                                  : "; yet its residuals speak against it (see the verdict)";
   }
   return sentence + ".";
 }

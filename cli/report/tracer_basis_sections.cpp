@@ -91,7 +91,10 @@ std::string point_inputs(const SamplingPoint& point) {
   table.left = {false, false, false, true};
   add_samples(point.before, "before the dose", table);
   add_samples(point.samples, "", table);
-  return html + "<details><summary>All samples as read (background still in them)</summary>" +
+  constexpr std::size_t kMostPrinted = 150;
+  return html +
+         fmt::format("<details{}><summary>All samples as read (background still in them)</summary>",
+                     table.rows.size() <= kMostPrinted ? " class=printed" : "") +
          html_of(table) + "</details>\n";
 }
 

@@ -2,6 +2,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cctype>
 #include <cmath>
 #include <limits>
 
@@ -24,6 +25,15 @@ constexpr int kGrid = 240;
 
 double background_at(const TracerTest& test, double time) {
   return test.background.level + test.background.slope * (time - test.dose_at);
+}
+
+/// Name of a figure and its CSV: lower-case letters, figures and hyphens only, one per point.
+std::string figure_name(const std::string& what, const TracerTest& test, std::size_t p) {
+  std::string name = what + "-";
+  for (const char c : test.points[p].at) {
+    name += std::isalnum(static_cast<unsigned char>(c)) != 0 ? c : '-';
+  }
+  return p == 0 ? name : fmt::format("{}-{}", name, p + 1);
 }
 
 std::size_t n_shown(const TracerReportInput& input) {
@@ -246,18 +256,18 @@ std::string residual_figures(const TracerReportInput& input, std::size_t p) {
   const std::string& at = input.test.points[p].at;
   const std::string csv = residuals_csv(input, p);
   std::string html = html_figure(
-      fmt::format("residuals-{}", at), svg_of(residual_chart(input, p, true)),
+      figure_name("residuals", input.test, p), svg_of(residual_chart(input, p, true)),
       fmt::format("<b>Residuals at {}</b> in units of the error each sample has in the fit; above "
                   "0 the fit lies higher than the sample. Long runs on one side say that the curve "
                   "has another shape. Samples under the limit are left out here and are in the "
                   "CSV.",
                   html_escaped(at)),
       csv);
-  html +=
-      html_figure(fmt::format("residuals-by-value-{}", at), svg_of(residual_chart(input, p, false)),
-                  "<b>The same against the fitted value</b>: residuals that widen to one side "
-                  "say that the stated error is wrong there.",
-                  csv);
+  html += html_figure(figure_name("residuals-by-value", input.test, p),
+                      svg_of(residual_chart(input, p, false)),
+                      "<b>The same against the fitted value</b>: residuals that widen to one side "
+                      "say that the stated error is wrong there.",
+                      csv);
   return html;
 }
 
@@ -275,9 +285,9 @@ std::string tracer_curve_section(const TracerReportInput& input) {
         n_shown(input) > 0 ? "Curves: the best models, drawn on past the last sample." : "",
         censored_words(point));
     std::string charts =
-        html_figure(fmt::format("curve-{}", point.at), svg_of(chart), caption, csv_of(chart));
+        html_figure(figure_name("curve", input.test, p), svg_of(chart), caption, csv_of(chart));
     if (const auto log_chart = logarithmic(input, chart)) {
-      charts += html_figure(fmt::format("curve-log-{}", point.at), svg_of(*log_chart),
+      charts += html_figure(figure_name("curve-log", input.test, p), svg_of(*log_chart),
                             logarithmic_words(input.test), csv_of(*log_chart));
     }
     html += "<div class=charts>" + charts + "</div>\n";

@@ -192,6 +192,31 @@ TEST(TracerReport, SaysWhenNothingCouldBeFitted) {
   EXPECT_EQ(section(page, "networks"), "");
 }
 
+TEST(TracerReport, SaysInTheAnswerWhenResidualsSpeakAgainstTheBestModel) {
+  const auto sample = two_region_sample(R"(["one_tank"])");
+  ASSERT_EQ(sample->analysis.models.size(), 1U);
+  EXPECT_THAT(section(tracer_report_page(sample->input()), "answer"),
+              HasSubstr("yet its residuals speak against it"));
+  EXPECT_THAT(section(two_region_page(), "answer"), Not(HasSubstr("speak against it")));
+}
+
+// A tenth of a mixed tank leaves in 0.105 V/Q; the first sample is taken at 0.2 V/Q.
+TEST(TracerReport, TakesTheFirstTenthFromTheModelWhereSamplesBeginLate) {
+  EXPECT_THAT(section(step_page(), "answer"),
+              HasSubstr("by the best model (before the first sample)"));
+}
+
+TEST(TracerReport, DrawsEverySamplingPointUnderANameOfItsOwn) {
+  auto sample = two_regions();
+  sample->test.points.push_back(sample->test.points.front());
+  sample->test.points.back().at = "pipe <2>";
+  sample->analysis.points.push_back({"pipe <2>", std::nullopt, "invented reason"});
+  const std::string page = tracer_report_page(sample->input());
+  EXPECT_THAT(section(page, "curve"), HasSubstr("download=\"curve-pipe--2--2.csv\""));
+  EXPECT_THAT(section(page, "moments"), HasSubstr("invented reason"));
+  EXPECT_THAT(page, Not(HasSubstr("<2>")));
+}
+
 TEST(TracerReport, SaysWhenT10IsNotKnown) {
   auto sample = step_sample();
   sample->analysis.points.front().moments->morrill = 0.0;
