@@ -116,7 +116,7 @@ def prints(browser, page):
     for heading in headings:
         check(html.unescape(heading) in text, page.name, f"the PDF lacks {heading!r}")
     if "class=printed" in page.read_text(encoding="utf-8"):
-        check(re.search(r"^ *-3 .*before the dose|^ *1\.6 ", text, re.M), page.name, "the PDF lacks the samples")
+        check(re.search(r"^ *\u22123 .*before the dose|^ *1\.6 ", text, re.M), page.name, "the PDF lacks the samples")
     for word in ("prepared by", "checked by"):
         check(word in text, page.name, f"the PDF lacks {word!r}")
     check(3 <= text.count("\f") <= 25, page.name, f"the PDF has {text.count(chr(12))} pages")
