@@ -28,11 +28,14 @@ std::string model_sentence(const TracerReportInput& input) {
            "compared.";
   }
   const RankedModel& best = models.front();
-  std::string sentence = fmt::format(
-      "Of {} zone model{} fitted, <b>{}</b> explains the samples best (weight {} %): {} (95 % "
-      "intervals)",
-      models.size(), models.size() == 1 ? "" : "s", html_escaped(best.fit.name),
-      brief(100.0 * best.fit.weight, 2), model_in_words(best.fit, input.test));
+  const std::string name = "<b>" + html_escaped(best.fit.name) + "</b>";
+  std::string sentence =
+      models.size() == 1
+          ? fmt::format("One zone model was fitted, {}: ", name)
+          : fmt::format(
+                "Of {} zone models fitted, {} explains the samples best (weight {}\u00A0%): ",
+                models.size(), name, brief(100.0 * best.fit.weight, 2));
+  sentence += model_in_words(best.fit, input.test) + " (95\u00A0% intervals)";
   std::string rivals;
   for (std::size_t m = 1; m < models.size(); ++m) {
     if (models[m].fit.aicc - best.fit.aicc >= 2.0) break;
@@ -71,8 +74,8 @@ std::string recovery_sentence(const TracerReportInput& input) {
   if (!input.test.recovery_fitted) return sentence + "; the fits take it all as recovered.";
   for (const auto& p : input.analysis.models.front().fit.parameters) {
     if (p.name == "recovered_fraction") {
-      sentence +=
-          fmt::format("; the best fit puts it at {} (95 %)", interval_in_words(p, 100.0, "%"));
+      sentence += fmt::format("; the best fit gives {} (95\u00A0% interval)",
+                              interval_in_words(p, 100.0, "%"));
     }
   }
   return sentence + ".";

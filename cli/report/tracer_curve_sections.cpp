@@ -102,6 +102,30 @@ ChartSeries sample_series(const TracerTest& test, const std::vector<TracerSample
   return series;
 }
 
+/// Highest sample with its error bar, net [g/m3]; 0 without any above 0.
+double highest_sample(const Chart& chart) {
+  double highest = 0.0;
+  for (const ChartSeries& series : chart.series) {
+    for (const double high : series.high) highest = std::max(highest, high);
+  }
+  return highest;
+}
+
+/// A fitted bypass peaks far above every sample while the dose lasts: the scale goes by the samples
+/// then, and the curve runs off the top.
+bool cut_off_peaks(Chart& chart) {
+  const double highest = highest_sample(chart);
+  if (!(highest > 0.0)) return false;
+  double peak = 0.0;
+  for (const ChartSeries& series : chart.series) {
+    if (series.kind != ChartSeries::Kind::line) continue;
+    for (const ChartPoint& point : series.points) peak = std::max(peak, point.y);
+  }
+  if (peak < 1.6 * highest) return false;
+  chart.y.high = 1.25 * highest;
+  return true;
+}
+
 Chart curve_chart(const TracerReportInput& input, std::size_t p) {
   const TracerTest& test = input.test;
   const auto& point = test.points[p];
@@ -252,6 +276,9 @@ Chart residual_chart(const TracerReportInput& input, std::size_t p, bool against
   return chart;
 }
 
+/// A chance as %, "< 0.01" where it is as good as none.
+std::string chance(double p) { return p < 1e-4 ? "< 0.01" : shown(100.0 * p, 2); }
+
 std::string residual_figures(const TracerReportInput& input, std::size_t p) {
   const std::string& at = input.test.points[p].at;
   const std::string csv = residuals_csv(input, p);
@@ -277,12 +304,16 @@ std::string tracer_curve_section(const TracerReportInput& input) {
   std::string html;
   for (std::size_t p = 0; p < input.test.points.size(); ++p) {
     const auto& point = input.test.points[p];
-    const Chart chart = curve_chart(input, p);
+    Chart chart = curve_chart(input, p);
+    const bool cut = cut_off_peaks(chart);
     const std::string caption = fmt::format(
         "<b>Tracer ({}) at {}</b>, background taken off. Bars: one standard deviation, as stated. "
-        "{}{}",
+        "{}{}{}",
         html_escaped(input.test.tracer), html_escaped(point.at),
         n_shown(input) > 0 ? "Curves: the best models, drawn on past the last sample." : "",
+        cut ? " While the dose lasts a fitted curve runs off the top: a bypass; its peak is in the "
+              "CSV."
+            : "",
         censored_words(point));
     std::string charts =
         html_figure(figure_name("curve", input.test, p), svg_of(chart), caption, csv_of(chart));
@@ -311,8 +342,8 @@ std::string tracer_residual_section(const TracerReportInput& input) {
     for (const std::string& sentence : fit.tests.words)
       words += (words.empty() ? "" : " ") + sentence;
     table.rows.push_back({fit.name, fit.tests.runs_p ? std::to_string(fit.tests.n_runs) : "n/a",
-                          fit.tests.runs_p ? shown(100.0 * *fit.tests.runs_p, 2) : "too few",
-                          shown(100.0 * fit.tests.scatter_p, 2),
+                          fit.tests.runs_p ? chance(*fit.tests.runs_p) : "too few",
+                          chance(fit.tests.scatter_p),
                           words.empty() ? "Nothing against the model." : words});
   }
   return html + html_of(table) +

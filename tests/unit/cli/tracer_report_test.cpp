@@ -206,6 +206,14 @@ TEST(TracerReport, TakesTheFirstTenthFromTheModelWhereSamplesBeginLate) {
               HasSubstr("by the best model (before the first sample)"));
 }
 
+// Half of the dose as a bypass within half an hour stands hundreds of times above the samples.
+TEST(TracerReport, ScalesTheChartByTheSamplesNotByTheBypass) {
+  const auto sample = two_region_sample(R"(["bypass_dead"])");
+  EXPECT_THAT(section(tracer_report_page(sample->input()), "curve"),
+              HasSubstr("a fitted curve runs off the top"));
+  EXPECT_THAT(section(two_region_page(), "curve"), Not(HasSubstr("runs off the top")));
+}
+
 TEST(TracerReport, DrawsEverySamplingPointUnderANameOfItsOwn) {
   auto sample = two_regions();
   sample->test.points.push_back(sample->test.points.front());
