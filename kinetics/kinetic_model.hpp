@@ -82,8 +82,8 @@ class KineticModel {
   ~KineticModel();
   KineticModel(KineticModel&&) noexcept;
   KineticModel& operator=(KineticModel&&) noexcept;
-  KineticModel(const KineticModel&) = delete;
-  KineticModel& operator=(const KineticModel&) = delete;
+  KineticModel(const KineticModel&);
+  KineticModel& operator=(const KineticModel&);
 
   std::string name;
   std::string title;
@@ -98,7 +98,8 @@ class KineticModel {
   /// [K] Temperatures for which the model's rates hold; empty when its file does not say.
   std::optional<std::pair<double, double>> temperature_range;
   std::vector<std::string> caveats;  ///< what the model's own file says of its limits
-  std::unique_ptr<const ModelProgram> program;
+  /// Immutable, and shared by copies of the model (the ideal tank beside a network).
+  std::shared_ptr<const ModelProgram> program;
 
   [[nodiscard]] std::optional<std::size_t> component(std::string_view name) const;
   [[nodiscard]] std::optional<std::size_t> gas(std::string_view name) const;

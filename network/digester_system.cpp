@@ -118,8 +118,9 @@ void DigesterSystem::rates(std::span<const double> y, std::span<double> f) {
   }
 }
 
-void DigesterSystem::enter(double t) {
-  const OperatingPoint& point = operation_.at(t);
+void DigesterSystem::enter(double t) { operate(operation_.at(t)); }
+
+void DigesterSystem::operate(const OperatingPoint& point) {
   transport_.set(point);
   ledger_.set(point);
   kind_ = point.kind;

@@ -60,6 +60,9 @@ class DigesterSystem final : public core::DaeSystem {
     return operation_.next_switch(t);
   }
   void enter(double t) override;
+  /// Sets what flows and what the feeds carry, whatever the schedules say (until the next enter):
+  /// for a digester under another load.
+  void operate(const OperatingPoint& point);
   [[nodiscard]] std::size_t interval_kind() const override { return kind_; }
   core::Result<core::Done> make_consistent(std::span<double> y) override;
   [[nodiscard]] std::string unknown_place(std::size_t i) const override;
