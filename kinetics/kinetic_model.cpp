@@ -100,6 +100,8 @@ std::optional<KineticModel> read_document(const core::ReadingContext& context,
 
 KineticModel::KineticModel() = default;
 KineticModel::~KineticModel() = default;
+KineticModel::KineticModel(const KineticModel&) = default;
+KineticModel& KineticModel::operator=(const KineticModel&) = default;
 KineticModel::KineticModel(KineticModel&&) noexcept = default;
 KineticModel& KineticModel::operator=(KineticModel&&) noexcept = default;
 
