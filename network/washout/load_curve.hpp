@@ -13,13 +13,13 @@ namespace stillzone::network {
 
 /// A steady state at a load, as an operator sees it.
 struct CurvePoint {
-  double load = 1.0;           ///< 1 = today
-  double hrt_d = 0.0;          ///< [d] volume of all zones over all feed flow
-  double methane_flow = 0.0;   ///< [m3/d] 0 degC, 1.01325 bar, all headspaces
-  double vfa = 0.0;            ///< the model's VFA in the effluent, its unit; NaN: it has none
-  double ph = 0.0;             ///< in the effluent of the largest outlet; NaN: the model has none
-  double effluent_cod = 0.0;   ///< [kg COD/m3] all outlets mixed
-  double cod_removed = 0.0;    ///< share of the feed's COD that leaves as gas or is lost in the model
+  double load = 1.0;          ///< 1 = today
+  double hrt_d = 0.0;         ///< [d] volume of all zones over all feed flow
+  double methane_flow = 0.0;  ///< [m3/d] 0 degC, 1.01325 bar, all headspaces
+  double vfa = 0.0;           ///< the model's VFA in the effluent, its unit; NaN: it has none
+  double ph = 0.0;            ///< in the effluent of the largest outlet; NaN: the model has none
+  double effluent_cod = 0.0;  ///< [kg COD/m3] all outlets mixed
+  double cod_removed = 0.0;  ///< share of the feed's COD that leaves as gas or is lost in the model
   std::optional<bool> stable;  ///< none: not worked out
   /// [1/d] minus the real part of the dominant eigenvalue; none: not worked out
   std::optional<double> recovery_rate;
@@ -72,8 +72,7 @@ struct CurveOptions {
 /// do in `healthy`; "soured" is added when the model's pH is below 6.5 (common practice, no source)
 /// or VFA is over ten times that of `healthy`.
 [[nodiscard]] std::string name_state(const Case& the_case, const CurvePoint& point,
-                                     const std::vector<bool>& lives,
-                                     const CurvePoint* healthy,
+                                     const std::vector<bool>& lives, const CurvePoint* healthy,
                                      const std::vector<bool>& healthy_lives);
 
 /// Traces the load curve of a case (flows by LoadFlows). Failure: no steady state at any load

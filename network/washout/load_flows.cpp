@@ -37,9 +37,10 @@ LoadFlows::LoadFlows(const Case& the_case, const FlowBalance& balance, bool zone
                                    : std::nullopt);
     direction_.push_back(stream.from == flow.from ? 1.0 : -1.0);
   }
-  rule_ = "load 1 is today: the flow of every feed is multiplied by the load, its concentrations "
-          "are kept, so the retention time falls as 1/load; flows found by continuity or share "
-          "follow";
+  rule_ =
+      "load 1 is today: the flow of every feed is multiplied by the load, its concentrations "
+      "are kept, so the retention time falls as 1/load; flows found by continuity or share "
+      "follow";
   if (some_stay) {
     rule_ += zones_too ? "; exchanges stay as given, every given one-way flow is multiplied too"
                        : "; exchanges and flows given between zones (mixing) stay as they are";

@@ -42,8 +42,8 @@ class LoadFlows {
   const Case* case_;
   const FlowBalance* balance_;
   OperatingPoint today_;
-  std::vector<double> fixed_;    ///< all flow variables: the part that stays
-  std::vector<double> growing_;  ///< the part in proportion to load
+  std::vector<double> fixed_;                      ///< all flow variables: the part that stays
+  std::vector<double> growing_;                    ///< the part in proportion to load
   std::vector<std::optional<std::size_t>> drift_;  ///< one per stream of an exchange
   std::vector<double> direction_;                  ///< of the drift, one per stream
   std::string rule_;
