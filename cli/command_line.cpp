@@ -44,8 +44,7 @@ std::vector<std::string> names_of(const std::vector<Command>& commands) {
 
 /// Commands of the contract that later versions bring.
 bool comes_later(const std::string& name) {
-  static const std::vector<std::string> later = {"tracer", "plan", "washout", "retrofit",
-                                                 "calibrate"};
+  static const std::vector<std::string> later = {"tracer", "plan", "retrofit", "calibrate"};
   return std::find(later.begin(), later.end(), name) != later.end();
 }
 
