@@ -62,13 +62,17 @@ std::string loads_text(const network::Case& the_case, const network::Washout& wa
   table.row({"state today", network.today_is, ideal.today_is});
   table.row({"critical load (today = 1)", load_cell(network.critical_load),
              load_cell(ideal.critical_load)});
+  table.row({"both states possible from load", load_cell(network.return_load),
+             load_cell(ideal.return_load)});
   table.row({"first to fail", name_of(network), name_of(ideal)});
   table.row({"half of today's COD removal lost at", load_cell(network.half_treatment_load),
              load_cell(ideal.half_treatment_load)});
-  table.row({"methane today [m3/d]", today(network, &CurvePoint::methane_flow),
-             today(ideal, &CurvePoint::methane_flow)});
-  table.row({fmt::format("VFA today [{}]", vfa_unit(the_case)), today(network, &CurvePoint::vfa),
-             today(ideal, &CurvePoint::vfa)});
+  if (!the_case.kinetics.gases.empty())
+    table.row({"methane today [m3/d]", today(network, &CurvePoint::methane_flow),
+               today(ideal, &CurvePoint::methane_flow)});
+  if (!the_case.kinetics.vfa.empty())
+    table.row({fmt::format("VFA today [{}]", vfa_unit(the_case)), today(network, &CurvePoint::vfa),
+               today(ideal, &CurvePoint::vfa)});
   table.row({"effluent COD today [kg/m3]", today(network, &CurvePoint::effluent_cod),
              today(ideal, &CurvePoint::effluent_cod)});
   table.row({"recovery rate today [1/d]", recovery(network), recovery(ideal)});
@@ -93,7 +97,11 @@ std::string groups_text(const network::Case& the_case, const network::Washout& w
   std::string text =
       table.text() +
       "  Invasion rate at today's state: 0 where the group lives (growth = losses; below 0 by what "
-      "the feed brings),\n  > 0: absent but it could live here, < 0: washed out.\n";
+      "the feed brings),\n  > 0: absent but it could live here, < 0: washed out. In a zone: "
+      "\"sustains itself\" when net "
+      "growth meets the\n  zone's whole outflow, \"grows\" when growth exceeds decay, \"carried "
+      "in\" when it decays "
+      "there.\n";
   if (shown < washout.zones.size()) text += "  More zones are in summary.json.\n";
   return text;
 }
@@ -107,7 +115,8 @@ std::string life_in_zone(const network::Case& the_case, const network::GroupWash
   const auto component = the_case.kinetics.component(group.component);
   const double floor = component ? the_case.kinetics.components[*component].floor : 0.0;
   if (found.biomass[zone] <= floor || !group.lives) return "absent";
-  return found.net_growth[zone] > found.own_loss[zone] ? "grows" : "carried in";
+  if (!(found.net_growth[zone] > 0.0)) return "carried in";
+  return found.net_growth[zone] < found.own_loss[zone] * (1.0 - 1e-6) ? "grows" : "sustains itself";
 }
 
 std::vector<std::string> washout_answer(const network::Case& the_case,

@@ -14,8 +14,9 @@ namespace stillzone::cli {
 [[nodiscard]] std::vector<std::string> washout_answer(const network::Case& the_case,
                                                       const network::Washout& washout);
 
-/// What a group does in a zone, in a word: "grows" (faster than its zone is renewed), "carried in"
-/// (present, kept up by what flows in), "absent".
+/// What a group does in a zone, in a word: "sustains itself" (net growth meets the zone's whole
+/// outflow), "grows" (growth exceeds decay), "carried in" (decays there, kept up by what flows in),
+/// "absent".
 [[nodiscard]] std::string life_in_zone(const network::Case& the_case,
                                        const network::GroupWashout& group, std::size_t zone);
 

@@ -113,6 +113,8 @@ std::string margins_html(const WashoutReportInput& input) {
   table.rows.push_back({"state today", network.today_is, ideal.today_is});
   table.rows.push_back(
       {"critical load (today = 1)", cell(network.critical_load), cell(ideal.critical_load)});
+  table.rows.push_back(
+      {"both states possible from load", cell(network.return_load), cell(ideal.return_load)});
   table.rows.push_back({"what happens there", end_of_curve(network), end_of_curve(ideal)});
   table.rows.push_back({"first to fail", failing(network), failing(ideal)});
   table.rows.push_back({"state beyond", network.state_beyond, ideal.state_beyond});
@@ -139,7 +141,9 @@ std::string warning_html(const WashoutReportInput& input) {
        .left = {true}});
   html +=
       "<p>The recovery rate is minus the real part of the dominant eigenvalue of the steady state: "
-      "small disturbances die out at this rate in the end. It falls towards 0 before a critical "
+      "small disturbances die out at this rate in the end. It cannot exceed the rate at which "
+      "water "
+      "alone renews the zones, and falls from there towards 0 before a critical "
       "load is reached, so that slower and slower recovery from ordinary upsets is a sign of a "
       "shrinking margin. curve.csv holds it along the curve.</p>\n";
   Chart chart;
@@ -190,8 +194,10 @@ std::string groups_html(const WashoutReportInput& input) {
          "<p>Invasion rate: largest real part of the eigenvalues of transport + diag(growth \u2212 "
          "decay) at today's state, all else held. It is 0 where the group lives, positive where it "
          "is absent but a few cells would grow into a population, negative where they wash out. "
-         "\"grows\": net growth in this zone exceeds the zone's own renewal; \"carried in\": kept "
-         "up by what flows in. In brackets the concentration in the model's unit.</p>\n";
+         "\"sustains itself\": net growth meets the zone's whole outflow; \"grows\": growth "
+         "exceeds "
+         "decay; \"carried in\": decays there, kept up by what flows in. In brackets the "
+         "concentration in the model's unit.</p>\n";
 }
 
 std::string assumed_html() {

@@ -212,7 +212,7 @@ Result<BranchPoint> Continuation::locate_fold(const BranchPoint& from, const Bra
     if (!point) break;  // at the fold itself to rounding: the best so far stands
     const double here = point.value().tangent_parameter;
     if (std::abs(here) <= std::abs(best.tangent_parameter)) best = std::move(point).value();
-    if (std::abs(best.tangent_parameter) < 1e-7 * scale_p_ || high - low < 1e-9 * distance) break;
+    if (std::abs(best.tangent_parameter) < 1e-13 * scale_p_ || high - low < 1e-12 * distance) break;
     const int side = here * at_low > 0.0 ? 1 : -1;
     if (side > 0) {
       low = h;

@@ -54,6 +54,10 @@ class Tracer {
   void take_fold(const core::BranchPoint& fold);
   void take_washout(const core::BranchPoint& before, const core::BranchPoint& after,
                     std::size_t group);
+  std::pair<double, std::vector<double>> locate_washout(const core::BranchPoint& before,
+                                                        const core::BranchPoint& after,
+                                                        std::size_t group);
+  void add_today(const core::BranchPoint& before, const core::BranchPoint& after);
   [[nodiscard]] std::optional<std::size_t> lost_group(const core::BranchPoint& before,
                                                       const core::BranchPoint& after) const;
   void look_beyond();
@@ -223,18 +227,36 @@ void Tracer::follow_past_fold(core::BranchPoint from) {
     if (!next) break;
     core::BranchPoint& to = next.value();
     if (to.parameter < options_.lowest_load || to.parameter > options_.highest_load ||
-        !flows_.possible(to.parameter) || lost_group(at, to)) {
+        !flows_.possible(to.parameter)) {
       break;
     }
+    if (const auto group = lost_group(at, to)) {
+      const auto [load, y] = locate_washout(at, to, *group);
+      curve_.return_load = load;
+      if (at.parameter > 1.0 && load < 1.0) add_today(at, to);
+      if (!y.empty()) add(curve_.points, y, load);
+      break;
+    }
+    if (at.parameter > 1.0 && to.parameter < 1.0) add_today(at, to);
     add(curve_.points, to.y, to.parameter);
     at = std::move(to);
   }
 }
 
+/// The state of this part of the branch at today's load exactly.
+void Tracer::add_today(const core::BranchPoint& before, const core::BranchPoint& after) {
+  const double share = (before.parameter - 1.0) / (before.parameter - after.parameter);
+  std::vector<double> y = before.y;
+  for (std::size_t i = 0; i < y.size(); ++i) y[i] += share * (after.y[i] - before.y[i]);
+  if (continuation_.correct(1.0, y)) add(curve_.points, y, 1.0);
+}
+
 /// The load at which the group can just no longer invade its own washed-out state (its biomass 0 in
-/// all zones): the root of its invasion rate along that state, by the secant method.
-void Tracer::take_washout(const core::BranchPoint& before, const core::BranchPoint& after,
-                          std::size_t group) {
+/// all zones), and that state: the root of its invasion rate along it, by the secant method. The
+/// state is empty when the load is only interpolated between the two points.
+std::pair<double, std::vector<double>> Tracer::locate_washout(const core::BranchPoint& before,
+                                                              const core::BranchPoint& after,
+                                                              std::size_t group) {
   const std::size_t component = case_.kinetics.groups[group].component;
   const StateLayout& layout = loaded_.digester().layout();
   std::vector<double> y = before.y;
@@ -246,9 +268,6 @@ void Tracer::take_washout(const core::BranchPoint& before, const core::BranchPoi
   const double had = values_.mean_of(before.y, component);
   const double has = values_.mean_of(after.y, component);
   const double guess = before.parameter + (after.parameter - before.parameter) * had / (had - has);
-  curve_.end = CurveEnd::washout;
-  curve_.first_to_fail = group;
-  curve_.critical_load = guess;
   const auto streams = loaded_.digester().operation().balance().streams();
   const auto invasion = [&](double load) -> std::optional<double> {
     if (!continuation_.correct(load, y, held)) return std::nullopt;
@@ -260,23 +279,34 @@ void Tracer::take_washout(const core::BranchPoint& before, const core::BranchPoi
   double b = guess;
   auto at_a = invasion(a);
   auto at_b = invasion(b);
-  for (int k = 0; at_a && at_b && k < kMostSecantSteps; ++k) {
+  bool located = false;
+  for (int k = 0; at_a && at_b && k < kMostSecantSteps && !located; ++k) {
     const double slope = (*at_b - *at_a) / (b - a);
     const double next = b - *at_b / slope;
     if (!std::isfinite(next) || std::abs(next / guess - 1.0) > 0.5) break;
     a = b;
     at_a = at_b;
     b = next;
-    curve_.critical_load = b;
-    if (std::abs(b - a) <= 1e-13 * std::abs(b)) break;
+    located = std::abs(b - a) <= 1e-13 * std::abs(b);
     at_b = invasion(b);
   }
-  if (!at_a || !at_b) {
-    curve_.notes.push_back("the washout load is interpolated between two points of the branch");
+  if (!located || !at_b) {
+    curve_.notes.push_back(
+        fmt::format("the load {:.4g} at which {} are washed out is interpolated between two points "
+                    "of the branch",
+                    guess, case_.kinetics.groups[group].name));
+    return {guess, {}};
   }
-  if (continuation_.correct(*curve_.critical_load, y, held)) {
-    add(curve_.points, y, *curve_.critical_load);
-  }
+  return {b, y};
+}
+
+void Tracer::take_washout(const core::BranchPoint& before, const core::BranchPoint& after,
+                          std::size_t group) {
+  const auto [load, y] = locate_washout(before, after, group);
+  curve_.end = CurveEnd::washout;
+  curve_.first_to_fail = group;
+  curve_.critical_load = load;
+  if (!y.empty()) add(curve_.points, y, load);
 }
 
 /// Where time goes when the load is raised past the critical one, and that branch both ways.
@@ -312,7 +342,8 @@ void Tracer::look_beyond() {
 }
 
 void Tracer::find_half_treatment() {
-  if (!curve_.today || curve_.start_load < 1.0 || !(curve_.today->cod_removed > 0.0)) return;
+  constexpr double kSome = 1e-6;  // less is rounding: a model that keeps its COD in the water
+  if (!curve_.today || curve_.start_load < 1.0 || !(curve_.today->cod_removed > kSome)) return;
   const double half = 0.5 * curve_.today->cod_removed;
   for (std::size_t k = 1; k < curve_.points.size(); ++k) {
     const CurvePoint& a = curve_.points[k - 1];

@@ -45,6 +45,10 @@ struct LoadCurve {
   std::vector<CurvePoint> beyond;
   CurveEnd end = CurveEnd::none;
   std::optional<double> critical_load;
+  /// Past a fold: the load at which the unstable part of the branch meets the washed-out state of a
+  /// group. Between it and the critical load both states are stable: once failed, a digester comes
+  /// back from a few cells only below it. None: no fold, or the branch does not get there.
+  std::optional<double> return_load;
   /// Group that is lost first: at a washout the one whose biomass reaches 0, at a fold the one
   /// whose biomass falls fastest in proportion along the branch.
   std::optional<std::size_t> first_to_fail;

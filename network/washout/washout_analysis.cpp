@@ -45,28 +45,70 @@ std::string load_text(const std::optional<double>& load) {
   return load ? fmt::format("{:.4g} times today's load", *load) : std::string("no load tried");
 }
 
-void add_cautions(Washout& washout) {
+/// Share of COD removed on the healthy branch at a load, between two points of the curve.
+std::optional<double> removed_at(const LoadCurve& curve, double load) {
+  for (std::size_t k = 1; k < curve.points.size(); ++k) {
+    const CurvePoint& a = curve.points[k - 1];
+    const CurvePoint& b = curve.points[k];
+    if (b.load <= a.load) break;  // past a fold
+    if (load < a.load || load > b.load) continue;
+    return a.cod_removed + (load - a.load) / (b.load - a.load) * (b.cod_removed - a.cod_removed);
+  }
+  return std::nullopt;
+}
+
+/// Where, above today's load, the network falls short of the ideal tank the most.
+struct Shortfall {
+  double load = 1.0;
+  double network = 0.0;
+  double ideal = 0.0;
+};
+
+std::optional<Shortfall> worst_shortfall(const LoadCurve& network, const LoadCurve& ideal) {
+  constexpr double kWorthAWord = 0.005;
+  std::optional<Shortfall> worst;
+  for (const CurvePoint& point : network.points) {
+    const auto tank = removed_at(ideal, point.load);
+    if (point.load < 1.0 || !tank || *tank - point.cod_removed < kWorthAWord) continue;
+    if (worst && *tank - point.cod_removed <= worst->ideal - worst->network) continue;
+    worst = Shortfall{point.load, point.cod_removed, *tank};
+  }
+  return worst;
+}
+
+/// The trap of the transport criterion: a zone that exchanges little keeps cells that the flow
+/// cannot reach, so that "washout" comes later while treatment is lost earlier.
+void add_sheltering(Washout& washout) {
   const LoadCurve& network = washout.network;
   const LoadCurve& ideal = washout.ideal;
   const bool later = ideal.critical_load &&
                      (network.critical_load ? *network.critical_load > *ideal.critical_load * 1.001
                                             : network.end == CurveEnd::none);
-  if (later) {
-    std::string text = fmt::format(
-        "The network keeps its microorganisms longer than the ideal tank (lost at {}, ideal tank "
-        "at "
-        "{}). This is no advantage of the poor mixing: zones that exchange little shelter biomass "
-        "while the water that passes them is treated less and less.",
-        load_text(network.critical_load), load_text(ideal.critical_load));
-    if (network.half_treatment_load) {
-      text += fmt::format(" Half of today's COD removal is already lost at {}",
-                          load_text(network.half_treatment_load));
-      text += ideal.half_treatment_load
-                  ? fmt::format(" (ideal tank: at {}).", load_text(ideal.half_treatment_load))
-                  : ".";
-    }
-    washout.cautions.push_back(std::move(text));
+  if (!later) return;
+  std::string text = fmt::format(
+      "The network keeps its microorganisms longer than the ideal tank (lost at {}, ideal tank at "
+      "{}). This is no advantage of the poor mixing: zones that exchange little shelter biomass "
+      "while the water that passes them is treated less and less.",
+      load_text(network.critical_load), load_text(ideal.critical_load));
+  if (const auto worst = worst_shortfall(network, ideal)) {
+    text += fmt::format(
+        " At {:.3g} times today's load the network removes {:.1f} % of the COD where the ideal "
+        "tank "
+        "removes {:.1f} %.",
+        worst->load, 100.0 * worst->network, 100.0 * worst->ideal);
   }
+  if (network.half_treatment_load) {
+    text +=
+        fmt::format(" Half of today's COD removal is lost at {} (ideal tank: at {}).",
+                    load_text(network.half_treatment_load), load_text(ideal.half_treatment_load));
+  }
+  washout.cautions.push_back(std::move(text));
+}
+
+void add_cautions(Washout& washout) {
+  const LoadCurve& network = washout.network;
+  const LoadCurve& ideal = washout.ideal;
+  add_sheltering(washout);
   const bool better =
       network.today && ideal.today && network.today->cod_removed > ideal.today->cod_removed + 1e-6;
   if (better) {
