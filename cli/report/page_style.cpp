@@ -65,7 +65,7 @@ svg .halo{paint-order:stroke;stroke:var(--card);stroke-width:4px;stroke-linejoin
 button{font:inherit;font-size:.85rem;color:var(--accent);background:none;border:1px solid var(--accent);border-radius:6px;padding:1px 10px;cursor:pointer}
 @media screen and (max-width:820px){body{padding:0 14px 30px}.charts{grid-template-columns:minmax(0,1fr)}
 figure{padding:8px}figure.chart svg text{font-size:17px}h1{font-size:1.5rem}.net svg,.wide svg{width:auto;max-width:none}
-.scroll table{white-space:nowrap}}
+.scroll table{white-space:nowrap}.scroll caption{white-space:normal}}
 @media print{@page{size:A4;margin:16mm 14mm}html{background:#fff;color:#000;font-size:10.5pt}
 :root{--paper:#fff;--card:#fff;--ink:#000;--soft:#333;--mark:#f1f1f1;--rule:#bbb}
 body{max-width:none;padding:0}nav,button,.csv,.screen{display:none}.charts{display:block}

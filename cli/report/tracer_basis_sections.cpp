@@ -48,7 +48,7 @@ HtmlTable main_inputs(const TracerTest& test) {
   table.rows = {
       {"tracer", test.tracer + (test.conservative ? ", conservative" : ", not conservative")},
       {"nominal volume", brief(test.volume.value()) + " m\u00B3"},
-      {test.flow_record ? "flow, mean over the test (record below)" : "flow, constant",
+      {test.flow_record ? "flow, mean (record below)" : "flow, constant",
        brief(test.mean_flow.value()) + " m\u00B3/d"},
       {"nominal retention time", brief(test.volume.value() / test.mean_flow.value()) + " d"},
       {"dose", dose_words(test)},

@@ -162,8 +162,7 @@ std::string layout_words(const std::vector<std::string>& notes) {
 std::string network_of(const network::RankedModel& ranked, const network::TracerTest& test) {
   const ModelFit& fit = ranked.fit;
   const std::string name = html_escaped(fit.name);
-  const auto ours = network::rtd_model_names();
-  if (std::ranges::find(ours, fit.name) == ours.end()) {
+  if (is_own_network(fit)) {
     return fmt::format(
         "<p><b>{}</b> is a network of your own: its zones stand in its case file.</p>\n", name);
   }

@@ -7,6 +7,7 @@
 #include <utility>
 
 #include "cli/report/page.hpp"
+#include "network/tracer/rtd_model.hpp"
 
 namespace stillzone::cli {
 
@@ -118,7 +119,13 @@ std::string interval_in_words(const FittedParameter& parameter, double factor,
                         unit);
 }
 
+bool is_own_network(const ModelFit& fit) {
+  const auto ours = network::rtd_model_names();
+  return fit.source == "the user's own network" || std::ranges::find(ours, fit.name) == ours.end();
+}
+
 std::string model_in_words(const ModelFit& fit, const TracerTest& test) {
+  if (is_own_network(fit)) return listed(fit);
   const std::string& name = fit.name;
   if (name == "one_tank")
     return "the tank works as one well-mixed tank of " + volume_words(fit, test);

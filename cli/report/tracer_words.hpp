@@ -23,6 +23,10 @@ namespace stillzone::cli {
                                             double factor, const std::string& unit,
                                             bool complement = false);
 
+/// Whether a fit is of a network of the user's own, which is known by its file alone and may bear
+/// any name.
+[[nodiscard]] bool is_own_network(const network::ModelFit& fit);
+
 /// What a fitted model says of the tank, as half a sentence of HTML with its 95 % intervals: "31 to
 /// 38 % of the nominal volume stands still, exchanging 41 to 54 m3/d with the mixed rest". User
 /// networks: their fitted quantities one by one.

@@ -182,6 +182,17 @@ TEST(TracerReport, DrawsNoDeadVolumeThatTheTestDoesNotTellFromNone) {
   EXPECT_THAT(section(step_page(), "networks"), Not(HasSubstr("Zone dead")));
 }
 
+TEST(TracerReport, ShowsANetworkOfTheUsersOwnWithItsPoints) {
+  const auto sample = own_network_sample();
+  ASSERT_NE(sample, nullptr);
+  ASSERT_FALSE(sample->analysis.models.empty());
+  const std::string page = tracer_report_page(sample->input());
+  EXPECT_THAT(section(page, "networks"), HasSubstr("is a network of your own"));
+  EXPECT_THAT(section(page, "answer"), HasSubstr("/zones/pocket/volume"));
+  EXPECT_THAT(section(page, "curve"), HasSubstr("download=\"curve-pocket-2.csv\""));
+  EXPECT_THAT(section(page, "residuals"), HasSubstr("download=\"residuals-pocket-2.csv\""));
+}
+
 TEST(TracerReport, SaysWhenNothingCouldBeFitted) {
   const auto sample = too_few_samples();
   ASSERT_TRUE(sample->analysis.models.empty());

@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 #include <unistd.h>
 
+#include <array>
 #include <cmath>
 #include <filesystem>
 #include <fstream>
@@ -10,6 +11,7 @@
 
 #include "core/units.hpp"
 #include "network/tracer/dose_response.hpp"
+#include "network/tracer/network_model.hpp"
 
 namespace stillzone::cli {
 
@@ -36,12 +38,14 @@ class Noise {
 /// Reads the document with its tables in a folder of its own; nullptr and the faults when it
 /// cannot.
 std::unique_ptr<TracerSampleCase> read(const std::string& text, const std::string& outlet,
-                                       const std::string& flow) {
+                                       const std::string& flow,
+                                       const std::string& still = "t,li\n") {
   const fs::path folder = fs::temp_directory_path() /
                           fmt::format("stillzone_tracer_sample_{}_{}", ::getpid(), outlet.size());
   fs::create_directories(folder);
   std::ofstream(folder / "outlet.csv") << outlet;
   std::ofstream(folder / "flow.csv") << flow;
+  std::ofstream(folder / "still.csv") << still;
   core::FaultList faults;
   std::optional<network::TracerTest> test;
   if (const auto document = core::JsonDocument::parse(text, "test.json", folder, faults)) {
@@ -59,8 +63,9 @@ std::unique_ptr<TracerSampleCase> read(const std::string& text, const std::strin
   return sample;
 }
 
-void analyse(TracerSampleCase& sample) {
-  sample.analysis = network::analyse_tracer_test(sample.test, {}, {});
+void analyse(TracerSampleCase& sample,
+             std::vector<std::shared_ptr<const network::TracerModel>> networks = {}) {
+  sample.analysis = network::analyse_tracer_test(sample.test, std::move(networks), {});
   sample.remarks = {"An invented remark of the command with <tags> & signs."};
 }
 
@@ -117,6 +122,57 @@ std::unique_ptr<TracerSampleCase> two_region_sample(const std::string& models) {
   }
   auto sample = read(text, outlet, flow_record());
   if (sample) analyse(*sample);
+  return sample;
+}
+
+std::unique_ptr<TracerSampleCase> own_network_sample() {
+  const std::string text = R"({
+  "stillzone": "test/1", "title": "Two sampling points, invented", "volume": "1000 m3",
+  "flow": "50 m3/d", "dose": { "tracer": "lithium", "mass": "10 kg", "at": "0 d", "over": "1 h" },
+  "background": "0 g/m3", "recovery": "as dosed", "models": [{ "case": "one_tank.json" }],
+  "samples": [
+    { "at": "outlet", "csv": "outlet.csv", "time": { "column": "t", "unit": "d" },
+      "value": { "column": "li", "unit": "g/m3" }, "error": "0.1 g/m3" },
+    { "at": "pocket", "csv": "still.csv", "time": { "column": "t", "unit": "d" },
+      "value": { "column": "li", "unit": "g/m3" }, "error": "0.1 g/m3" } ]
+})";
+  const std::string network = R"({
+  "stillzone": "case/1", "title": "core and pocket", "kinetics": "inert", "temperature": "35 degC",
+  "zones": { "core": { "volume": { "value": "700 m3", "fit": ["100 m3", "2000 m3"] } },
+             "pocket": { "volume": { "value": "300 m3", "fit": ["10 m3", "2000 m3"] } } },
+  "feeds": { "in": { "flow": "50 m3/d", "state": {} } }, "outlets": ["outlet"],
+  "flows": [ { "from": "in", "to": "core" }, { "from": "core", "to": "outlet" },
+             { "between": ["core", "pocket"], "flow": { "value": "20 m3/d", "fit": ["0.1 m3/d", "500 m3/d"] } } ],
+  "run": { "kind": "steady" }
+})";
+  core::FaultList faults;
+  const core::UnitReader units;
+  // A network of the user's own may bear the name of one of our models.
+  const auto document = core::JsonDocument::parse(network, "one_tank.json", ".", faults);
+  const std::string blank_table = "t,li\n1,5\n2,5\n3,5\n4,5\n5,5\n";
+  const auto blank = read(text, blank_table, "", blank_table);
+  if (!document || !blank) return nullptr;
+  auto user = network::bind_user_network(*document, blank->test, units, faults);
+  if (!user) {
+    std::cerr << faults.text();
+    return nullptr;
+  }
+  std::vector<double> truth;
+  for (const auto& parameter : user->model->parameters()) truth.push_back(parameter.start);
+  std::array<std::string, 2> tables = {"t,li\n", "t,li\n"};
+  Noise noise;
+  for (int i = 1; i <= 30; ++i) {
+    const double t = 70.0 * std::pow(i / 30.0, 1.8);
+    for (std::size_t point = 0; point < 2; ++point) {
+      const network::SamplePosition position{point, blank->test.turnovers(t)};
+      double value = 0.0;
+      if (!user->model->predict(truth, {&position, 1}, {&value, 1}, {})) return nullptr;
+      tables[point] += fmt::format("{:.3f},{:.2f}\n", t, value + 0.1 * noise.next());
+    }
+  }
+  auto sample = read(text, tables[0], "", tables[1]);
+  if (sample)
+    analyse(*sample, {std::shared_ptr<const network::TracerModel>(std::move(user->model))});
   return sample;
 }
 

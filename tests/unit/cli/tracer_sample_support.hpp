@@ -24,6 +24,10 @@ struct TracerSampleCase {
 /// @param models the list of the document (JSON); empty: all, which takes long to fit
 std::unique_ptr<TracerSampleCase> two_region_sample(const std::string& models);
 
+/// Two sampling points, outlet and a zone, of a network of the user's own that bears the name of
+/// one of our models; 1000 m3 at 50 m3/d.
+std::unique_ptr<TracerSampleCase> own_network_sample();
+
 /// Three samples: no model can be fitted, no moments.
 std::unique_ptr<TracerSampleCase> too_few_samples();
 
