@@ -159,6 +159,14 @@ std::string tracer_answer_section(const TracerReportInput& input) {
       html += list_of("Verdict on the data" + at, {"No moments: " + point.reason});
     }
   }
+  const bool in_zones = std::ranges::any_of(
+      input.analysis.points, [](const network::PointResult& p) { return p.at != "outlet"; });
+  if (in_zones) {
+    html +=
+        "<p class=note>The verdicts judge each point as if it were the outlet. Inside a zone the "
+        "mean age may well be above volume over flow, and recovery is no balance: go by the fits "
+        "there.</p>\n";
+  }
   if (input.analysis.models.empty()) return html;
   const auto& fit = input.analysis.models.front().fit;
   std::vector<std::string> words = fit.tests.words;

@@ -189,6 +189,7 @@ TEST(TracerReport, ShowsANetworkOfTheUsersOwnWithItsPoints) {
   const std::string page = tracer_report_page(sample->input());
   EXPECT_THAT(section(page, "networks"), HasSubstr("is a network of your own"));
   EXPECT_THAT(section(page, "answer"), HasSubstr("/zones/pocket/volume"));
+  EXPECT_THAT(section(page, "answer"), HasSubstr("go by the fits there"));
   EXPECT_THAT(section(page, "curve"), HasSubstr("download=\"curve-pocket-2.csv\""));
   EXPECT_THAT(section(page, "residuals"), HasSubstr("download=\"residuals-pocket-2.csv\""));
 }
