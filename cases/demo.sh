@@ -10,5 +10,6 @@ program=build/release/bin/stillzone
 
 "$program" check cases/short_circuit_stagnant.json
 "$program" run cases/short_circuit_stagnant.json --out build/demo.out
+"$program" washout cases/near_washout.json --out build/demo_washout.out
 echo
 echo "The report: $PWD/build/demo.out/report.html"

@@ -34,16 +34,28 @@ void add_branch(Chart& chart, const std::string& name, const std::vector<CurvePo
   if (!series.points.empty()) chart.series.push_back(std::move(series));
 }
 
+/// The branch in stretches along which load goes one way: the stable part, then those past folds.
 void add_curve(Chart& chart, const std::string& name, const LoadCurve& curve, Member member,
                std::size_t style) {
-  const auto turn = std::ranges::max_element(curve.points, {}, &CurvePoint::load);
-  if (turn == curve.points.end()) return;
-  const std::vector<CurvePoint> rising(curve.points.begin(), turn + 1);
-  const std::vector<CurvePoint> falling(turn, curve.points.end());
-  add_branch(chart, name, rising, member, style);
-  if (falling.size() > 1) {
-    add_branch(chart, name + ", past the fold (unstable)", falling, member, style + 2);
+  std::vector<CurvePoint> stretch;
+  bool past_fold = false;
+  const auto finish = [&] {
+    if (stretch.size() < 2) return;
+    add_branch(chart, past_fold ? name + ", past the fold" : name, stretch, member,
+               past_fold ? style + 2 : style);
+  };
+  double direction = 0.0;
+  for (const CurvePoint& point : curve.points) {
+    const double change = stretch.empty() ? 0.0 : point.load - stretch.back().load;
+    if (change * direction < 0.0) {
+      finish();
+      past_fold = true;
+      stretch.erase(stretch.begin(), stretch.end() - 1);
+    }
+    if (std::abs(change) > 0.0) direction = change;
+    stretch.push_back(point);
   }
+  finish();
   add_branch(chart, name + ", beyond", curve.beyond, member, style + 4);
 }
 

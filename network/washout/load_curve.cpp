@@ -62,6 +62,7 @@ class Tracer {
                                                       const core::BranchPoint& after) const;
   void look_beyond();
   void find_half_treatment();
+  void tell_folds();
   void add(std::vector<CurvePoint>& points, std::span<const double> y, double load);
 
   const Case& case_;
@@ -74,6 +75,7 @@ class Tracer {
   LoadCurve curve_;
   std::vector<double> healthy_;       // state at curve_.start_load
   std::vector<bool> lives_;           // groups there
+  bool healthy_sour_ = false;         // its pH is below kSourPh: no better one was found
   std::vector<double> last_stable_;   // last state before the critical load
   std::vector<double> last_tangent_;  // its direction along the branch
 };
@@ -106,16 +108,20 @@ core::Result<core::Done> Tracer::find_start() {
       continue;
     }
     std::vector<bool> lives = values_.living(found.value(), load);
+    const CurvePoint point = values_.point(found.value(), load);
+    const bool sour = point.ph < kSourPh;
     if (load >= 1.0) {
-      curve_.today = values_.point(found.value(), load);
+      curve_.today = point;
       todays_lives = lives;
     }
-    if (healthy_.empty() || count(lives) > count(lives_)) {
+    const bool better = count(lives) > count(lives_) || (healthy_sour_ && !sour);
+    if (healthy_.empty() || (better && count(lives) >= count(lives_))) {
+      healthy_sour_ = sour;
       healthy_ = std::move(found).value();
       lives_ = std::move(lives);
       curve_.start_load = load;
     }
-    if (count(lives_) == lives_.size()) break;
+    if (count(lives_) == lives_.size() && !healthy_sour_) break;
   }
   if (healthy_.empty()) return *failure;
   const CurvePoint healthy = values_.point(healthy_, curve_.start_load);
@@ -205,6 +211,7 @@ void Tracer::follow_up(std::span<const double> y, double load) {
 void Tracer::take_fold(const core::BranchPoint& fold) {
   curve_.end = CurveEnd::fold;
   curve_.critical_load = fold.parameter;
+  curve_.folds.push_back(fold.parameter);
   double fastest = 0.0;
   const auto& groups = case_.kinetics.groups;
   for (std::size_t g = 0; g < groups.size(); ++g) {
@@ -229,6 +236,12 @@ void Tracer::follow_past_fold(core::BranchPoint from) {
     if (to.parameter < options_.lowest_load || to.parameter > options_.highest_load ||
         !flows_.possible(to.parameter)) {
       break;
+    }
+    if (to.tangent_parameter * at.tangent_parameter < 0.0) {
+      if (auto fold = continuation_.locate_fold(at, to, continuation_.last_step())) {
+        curve_.folds.push_back(fold.value().parameter);
+        add(curve_.points, fold.value().y, fold.value().parameter);
+      }
     }
     if (const auto group = lost_group(at, to)) {
       const auto [load, y] = locate_washout(at, to, *group);
@@ -356,6 +369,19 @@ void Tracer::find_half_treatment() {
   }
 }
 
+/// A branch that turns again past its first fold.
+void Tracer::tell_folds() {
+  if (curve_.folds.size() < 3) return;
+  const double highest = *std::ranges::max_element(curve_.folds);
+  curve_.notes.push_back(fmt::format(
+      "past its first fold at load {:.5g} the branch turns again ({} folds in all): zones fail one "
+      "after another{}",
+      curve_.folds.front(), curve_.folds.size(),
+      highest > curve_.folds.front() * (1.0 + 1e-9)
+          ? fmt::format(", and a weakened state is stable up to load {:.5g}", highest)
+          : std::string()));
+}
+
 core::Result<LoadCurve> Tracer::run() {
   if (auto found = find_start(); !found) return found.failure();
   if (!case_.kinetics.groups.empty() && count(lives_) == 0) {
@@ -373,6 +399,7 @@ core::Result<LoadCurve> Tracer::run() {
   follow_up(healthy_, curve_.start_load);
   find_half_treatment();
   look_beyond();
+  tell_folds();
   return curve_;
 }
 

@@ -45,6 +45,9 @@ struct LoadCurve {
   std::vector<CurvePoint> beyond;
   CurveEnd end = CurveEnd::none;
   std::optional<double> critical_load;
+  /// Loads of the folds in the order of the branch; the first is the critical load. More than one:
+  /// the network fails in steps (one zone before another).
+  std::vector<double> folds;
   /// Past a fold: the load at which the unstable part of the branch meets the washed-out state of a
   /// group. Between it and the critical load both states are stable: once failed, a digester comes
   /// back from a few cells only below it. None: no fold, or the branch does not get there.

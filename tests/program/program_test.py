@@ -101,7 +101,7 @@ class WrongCommandLines(InFolder):
 class Help(InFolder):
     def test_every_command_has_an_example(self):
         overview = run("help").stdout
-        for command in ("check", "run", "model", "schema"):
+        for command in ("check", "run", "washout", "model", "schema"):
             self.assertIn("\n  " + command + " ", overview)
             done = run("help", command)
             self.assertEqual(done.returncode, 0)
@@ -112,6 +112,40 @@ class Help(InFolder):
         done = run("--version")
         self.assertEqual((done.returncode, done.stderr), (0, ""))
         self.assertRegex(done.stdout, r"^stillzone \d+\.\d+\.\d+\n$")
+
+
+class Washout(InFolder):
+    def test_writes_its_files_and_says_where(self):
+        done = run("washout", CASES / "near_washout.json", cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertEqual(self.left_behind(), ["near_washout.out"])
+        files = sorted(p.name for p in (self.folder / "near_washout.out").iterdir()
+                       if not p.name.startswith("."))
+        self.assertEqual(files, ["curve.csv", "report.html", "summary.json"])
+        self.assertIn("Written to near_washout.out", done.stdout)
+        page = (self.folder / "near_washout.out" / "report.html").read_text()
+        for word in ("Load curves", "Early warning", "Who can live where", "Cautions", "Provenance"):
+            self.assertIn(word, page)
+
+    def test_wrong_case_leaves_nothing(self):
+        done = run("washout", CASES / "near_washout.json", "--set", "/zones/main/volume=-3 m3",
+                   cwd=self.folder)
+        self.assertEqual(done.returncode, 1)
+        self.assertIn("/zones/main/volume", done.stderr)
+        self.assertEqual(self.left_behind(), [])
+
+    def test_summary_holds_the_promised_keys(self):
+        done = run("washout", CASES / "near_washout.json", "--json", cwd=self.folder)
+        summary = json.loads(done.stdout)
+        for key in ("network_washout_rate_1_d", "ideal_washout_rate_1_d", "groups",
+                    "critical_load", "ideal_critical_load", "first_to_fail", "curve",
+                    "ideal_curve"):
+            self.assertIn(key, summary)
+        for point in summary["curve"]:
+            for key in ("load", "hrt_d", "methane_flow_m3_d", "vfa", "pH", "stable"):
+                self.assertIn(key, point)
+        self.assertLess(summary["critical_load"], 1)
+        self.assertGreater(summary["ideal_critical_load"], 1)
 
 
 class Files(InFolder):
