@@ -62,8 +62,8 @@ std::string loads_text(const network::Case& the_case, const network::Washout& wa
   table.row({"state today", network.today_is, ideal.today_is});
   table.row({"critical load (today = 1)", load_cell(network.critical_load),
              load_cell(ideal.critical_load)});
-  table.row({"both states possible from load", load_cell(network.return_load),
-             load_cell(ideal.return_load)});
+  table.row(
+      {"a failed state stays possible down to load", return_cell(network), return_cell(ideal)});
   table.row({"first to fail", name_of(network), name_of(ideal)});
   table.row({"half of today's COD removal lost at", load_cell(network.half_treatment_load),
              load_cell(ideal.half_treatment_load)});
@@ -107,6 +107,12 @@ std::string groups_text(const network::Case& the_case, const network::Washout& w
 }
 
 }  // namespace
+
+std::string return_cell(const LoadCurve& curve) {
+  if (curve.return_load) return fmt::format("{:.6g}", *curve.return_load);
+  if (curve.end != network::CurveEnd::fold || curve.points.empty()) return "-";
+  return fmt::format("below {:.3g}", curve.points.back().load);
+}
 
 std::string life_in_zone(const network::Case& the_case, const network::GroupWashout& group,
                          std::size_t zone) {

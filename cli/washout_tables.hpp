@@ -14,6 +14,10 @@ namespace stillzone::cli {
 [[nodiscard]] std::vector<std::string> washout_answer(const network::Case& the_case,
                                                       const network::Washout& washout);
 
+/// The load down to which a failed state stays possible beside the healthy one: "1.12", "below 0.2"
+/// when the branch past the fold was followed no further, "-" where there is no fold.
+[[nodiscard]] std::string return_cell(const network::LoadCurve& curve);
+
 /// What a group does in a zone, in a word: "sustains itself" (net growth meets the zone's whole
 /// outflow), "grows" (growth exceeds decay), "carried in" (decays there, kept up by what flows in),
 /// "absent".

@@ -126,7 +126,7 @@ std::string margins_html(const WashoutReportInput& input) {
   table.rows.push_back(
       {"critical load (today = 1)", cell(network.critical_load), cell(ideal.critical_load)});
   table.rows.push_back(
-      {"both states possible from load", cell(network.return_load), cell(ideal.return_load)});
+      {"a failed state stays possible down to load", return_cell(network), return_cell(ideal)});
   table.rows.push_back({"what happens there", end_of_curve(network), end_of_curve(ideal)});
   table.rows.push_back({"first to fail", failing(network), failing(ideal)});
   table.rows.push_back({"state beyond", network.state_beyond, ideal.state_beyond});
