@@ -63,6 +63,7 @@ Json curve_facts(const network::Case& the_case, const LoadCurve& curve) {
   facts["end"] = end_word(curve.end);
   facts["critical_load"] = maybe(curve.critical_load);
   facts["margin"] = curve.critical_load ? Json(*curve.critical_load - 1.0) : Json(nullptr);
+  facts["sour_load"] = maybe(curve.sour_load);
   facts["folds"] = curve.folds;
   facts["return_load"] = maybe(curve.return_load);
   facts["first_to_fail"] = curve.first_to_fail

@@ -65,6 +65,10 @@ std::string loads_text(const network::Case& the_case, const network::Washout& wa
   table.row(
       {"a failed state stays possible down to load", return_cell(network), return_cell(ideal)});
   table.row({"first to fail", name_of(network), name_of(ideal)});
+  if (network.sour_load || ideal.sour_load) {
+    table.row({"effluent pH below 6.5 from load", load_cell(network.sour_load),
+               load_cell(ideal.sour_load)});
+  }
   table.row({"half of today's COD removal lost at", load_cell(network.half_treatment_load),
              load_cell(ideal.half_treatment_load)});
   if (!the_case.kinetics.gases.empty())
@@ -132,7 +136,11 @@ std::vector<std::string> washout_answer(const network::Case& the_case,
   answer.push_back(fmt::format("Today the network is {}, the ideal tank of the same volume {}.",
                                network.today_is, washout.ideal.today_is));
   const auto sentence = [&](const char* who, const LoadCurve& curve) {
-    if (!curve.critical_load) return fmt::format("{}: {}.", who, end_of_curve(curve));
+    const std::string souring =
+        curve.sour_load
+            ? fmt::format("; its effluent is below pH 6.5 from load {:.4g} on", *curve.sour_load)
+            : std::string();
+    if (!curve.critical_load) return fmt::format("{}: {}{}.", who, end_of_curve(curve), souring);
     std::string text = fmt::format("{}: critical load {:.4g} of today's, margin {:+.3g} %; {}", who,
                                    *curve.critical_load, 100.0 * (*curve.critical_load - 1.0),
                                    end_of_curve(curve));
@@ -141,7 +149,7 @@ std::vector<std::string> washout_answer(const network::Case& the_case,
           fmt::format("; first to fail: {}", the_case.kinetics.groups[*curve.first_to_fail].name);
     }
     if (!curve.state_beyond.empty()) text += "; beyond it the digester is " + curve.state_beyond;
-    return text + ".";
+    return text + souring + ".";
   };
   answer.push_back(sentence("Network", network));
   answer.push_back(sentence("Ideal tank", washout.ideal));

@@ -130,6 +130,8 @@ std::string margins_html(const WashoutReportInput& input) {
   table.rows.push_back({"what happens there", end_of_curve(network), end_of_curve(ideal)});
   table.rows.push_back({"first to fail", failing(network), failing(ideal)});
   table.rows.push_back({"state beyond", network.state_beyond, ideal.state_beyond});
+  table.rows.push_back(
+      {"effluent pH below 6.5 from load", cell(network.sour_load), cell(ideal.sour_load)});
   table.rows.push_back({"half of today's COD removal lost at load",
                         cell(network.half_treatment_load), cell(ideal.half_treatment_load)});
   table.rows.push_back({"washout rate of transport alone [1/d]",

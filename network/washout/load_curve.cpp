@@ -62,6 +62,7 @@ class Tracer {
                                                       const core::BranchPoint& after) const;
   void look_beyond();
   void find_half_treatment();
+  void find_souring();
   void tell_folds();
   void add(std::vector<CurvePoint>& points, std::span<const double> y, double load);
 
@@ -369,6 +370,17 @@ void Tracer::find_half_treatment() {
   }
 }
 
+void Tracer::find_souring() {
+  for (std::size_t k = 1; k < curve_.points.size(); ++k) {
+    const CurvePoint& a = curve_.points[k - 1];
+    const CurvePoint& b = curve_.points[k];
+    if (b.load < a.load) return;  // past a fold
+    if (!(a.ph >= kSourPh && b.ph < kSourPh)) continue;
+    curve_.sour_load = a.load + (a.ph - kSourPh) / (a.ph - b.ph) * (b.load - a.load);
+    return;
+  }
+}
+
 /// A branch that turns again past its first fold.
 void Tracer::tell_folds() {
   if (curve_.folds.size() < 3) return;
@@ -384,7 +396,10 @@ void Tracer::tell_folds() {
 
 core::Result<LoadCurve> Tracer::run() {
   if (auto found = find_start(); !found) return found.failure();
-  if (!case_.kinetics.groups.empty() && count(lives_) == 0) {
+  if (case_.kinetics.groups.empty()) {
+    curve_.notes.emplace_back(
+        "the kinetic model names no microbial groups: there is nothing to wash out, only a curve");
+  } else if (count(lives_) == 0) {
     curve_.end = CurveEnd::nothing_lives;
     curve_.notes.push_back(
         "no microbial group lives at any load tried from this start: there is no healthy branch to "
@@ -398,6 +413,7 @@ core::Result<LoadCurve> Tracer::run() {
   add(curve_.points, healthy_, curve_.start_load);
   follow_up(healthy_, curve_.start_load);
   find_half_treatment();
+  find_souring();
   look_beyond();
   tell_folds();
   return curve_;

@@ -59,6 +59,9 @@ struct LoadCurve {
   std::string state_beyond;
   /// Load > today's at which the share of COD removed is half of today's; none: not on the curve.
   std::optional<double> half_treatment_load;
+  /// Load at which the effluent's pH falls through 6.5 (common practice, no source) on the way up
+  /// the healthy branch: a network can sour zone by zone without a fold. None: it does not.
+  std::optional<double> sour_load;
   std::optional<CurvePoint> today;  ///< the steady state at load 1 from the case's start
   std::string today_is;             ///< by the rules of name_state
   double start_load = 1.0;          ///< where the healthy branch was entered

@@ -153,5 +153,19 @@ TEST(Washout, PoorlyMixedTankFailsAtALoadTheIdealTankBears) {
             "acetate degraders");
 }
 
+/// A zone behind a fixed exchange keeps its biomass at any load while the zone that is fed sours:
+/// no fold warns of it.
+TEST(LoadCurve, NetworkCanSourWithoutAFold) {
+  const auto loaded =
+      load_file(std::string(STILLZONE_SOURCE_DIR) + "/tests/published/adm1/s2.case.json");
+  ASSERT_TRUE(loaded);
+  const auto curve = trace_load_curve(loaded->the_case, loaded->balance, {});
+  ASSERT_TRUE(curve.ok()) << curve.failure().text();
+  EXPECT_FALSE(curve.value().critical_load.has_value());
+  ASSERT_TRUE(curve.value().sour_load.has_value());
+  EXPECT_GT(*curve.value().sour_load, 1.0);
+  EXPECT_LT(*curve.value().sour_load, 4.0);
+}
+
 }  // namespace
 }  // namespace stillzone::network
