@@ -28,6 +28,17 @@ void add_flags(CLI::App& app, const Command& command, CommandLine& line) {
         ->take_all()
         ->allow_extra_args(false);
   }
+  if (command.emits_case) {
+    app.add_option("--emit", line.emit,
+                   "write a fitted model as a case: its number in the ranking, or its name");
+    app.add_option(
+        "--feed", line.feed,
+        "JSON file with the feed of that case: {\"NAME\": {\"flow\": .., \"state\": ..}}, "
+        "or a case whose feed is taken");
+    app.add_option("--rule", line.rule,
+                   "integration rule of the moments: straight lines (default), trapezoid, simpson, "
+                   "equal-step sum");
+  }
   app.add_option("--threads", line.threads, "threads to use (default: one per processor)")
       ->check(CLI::Range(1, 1024));
   app.add_flag("--quiet", line.quiet, "no progress and no log lines");
@@ -44,7 +55,7 @@ std::vector<std::string> names_of(const std::vector<Command>& commands) {
 
 /// Commands of the contract that later versions bring.
 bool comes_later(const std::string& name) {
-  static const std::vector<std::string> later = {"tracer", "plan", "retrofit", "calibrate"};
+  static const std::vector<std::string> later = {"plan", "retrofit", "calibrate"};
   return std::find(later.begin(), later.end(), name) != later.end();
 }
 

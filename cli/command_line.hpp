@@ -13,8 +13,11 @@ struct CommandLine {
   std::string command;
   std::string input;  ///< the file or name the command works on; may be empty where optional
   std::optional<std::string> out;
-  std::vector<std::string> settings;  ///< "/json/pointer=value"
-  int threads = 0;                    ///< 0: one per processor
+  std::vector<std::string> settings;    ///< "/json/pointer=value"
+  std::optional<std::string> emit;      ///< number or name of the model to write as a case
+  std::optional<std::string> feed;      ///< file with the feed of that case
+  std::string rule = "straight lines";  ///< integration rule of a tracer curve
+  int threads = 0;                      ///< 0: one per processor
   bool json = false;
   bool quiet = false;
   std::string log_level = "info";
@@ -31,6 +34,7 @@ struct Command {
   std::string example;
   bool writes_output = false;  ///< takes --out and --json
   bool reads_case = false;     ///< takes --set
+  bool emits_case = false;     ///< takes --emit, --feed and --rule
   int (*run)(const CommandLine& line, Console& console) = nullptr;
 };
 

@@ -5,6 +5,7 @@
 #include "cli/commands/model_command.hpp"
 #include "cli/commands/run_command.hpp"
 #include "cli/commands/schema_command.hpp"
+#include "cli/commands/tracer_command.hpp"
 #include "cli/commands/washout_command.hpp"
 
 namespace stillzone::cli {
@@ -12,7 +13,8 @@ namespace {
 
 /// A new command is one more line here and a file in cli/commands/.
 std::vector<Command> all_commands() {
-  return {check_command(), run_command(), washout_command(), model_command(), schema_command()};
+  return {check_command(),   run_command(),   tracer_command(),
+          washout_command(), model_command(), schema_command()};
 }
 
 }  // namespace

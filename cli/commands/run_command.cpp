@@ -3,12 +3,12 @@
 #include <fmt/format.h>
 #include <spdlog/spdlog.h>
 
-#include <ctime>
 #include <filesystem>
 #include <utility>
 
 #include "cli/health_remarks.hpp"
 #include "cli/loaded_case.hpp"
+#include "cli/output_path.hpp"
 #include "cli/progress.hpp"
 #include "cli/report/run_report.hpp"
 #include "cli/run_log.hpp"
@@ -22,19 +22,6 @@
 namespace stillzone::cli {
 namespace {
 
-std::filesystem::path output_path(const CommandLine& line) {
-  if (line.out) return *line.out;
-  return std::filesystem::path(line.input).stem().string() + ".out";
-}
-
-std::string today() {
-  const std::time_t now = std::time(nullptr);
-  std::tm calendar{};
-  gmtime_r(&now, &calendar);
-  return fmt::format("{:04}-{:02}-{:02} {:02}:{:02} UTC", calendar.tm_year + 1900,
-                     calendar.tm_mon + 1, calendar.tm_mday, calendar.tm_hour, calendar.tm_min);
-}
-
 core::Result<core::Done> write_files(const CommandLine& line, const LoadedCase& loaded,
                                      const network::RunResult& result, const std::string& summary,
                                      core::OutputFolder& folder) {
@@ -43,7 +30,7 @@ core::Result<core::Done> write_files(const CommandLine& line, const LoadedCase& 
     done = folder.write("series.csv", series_csv(result.series));
     if (done) {
       done = write_series_netcdf(folder.path("series.nc"), result, loaded.the_case.title,
-                                 today() + " " + line.whole);
+                                 time_of_writing() + " " + line.whole);
     }
   }
   if (done) {
@@ -54,7 +41,7 @@ core::Result<core::Done> write_files(const CommandLine& line, const LoadedCase& 
                                               .input_name = line.input,
                                               .input_text = loaded.text,
                                               .command_line = line.whole,
-                                              .date = today()}};
+                                              .date = time_of_writing()}};
     done = folder.write("report.html", run_report_page(input));
   }
   if (done) done = folder.commit();

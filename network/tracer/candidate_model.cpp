@@ -17,6 +17,9 @@ class CandidateUnderDose final : public TracerModel {
   [[nodiscard]] std::span<const RtdParameter> parameters() const override {
     return model_->parameters();
   }
+  [[nodiscard]] bool sees(const SamplingPoint& point) const override {
+    return point.at == "outlet";
+  }
   [[nodiscard]] bool predict(std::span<const double> p, std::span<const SamplePosition> positions,
                              std::span<double> values, std::span<double> gradient) const override {
     const std::size_t n = gradient.empty() ? 0 : p.size();

@@ -43,10 +43,11 @@ class DeviationLaw {
   double smallest_ = 0.0;
 };
 
-std::vector<WeighedSample> weighed_samples(const TracerTest& test,
+std::vector<WeighedSample> weighed_samples(const TracerTest& test, const TracerModel& model,
                                            std::span<const DeviationLaw> laws) {
   std::vector<WeighedSample> samples;
   for (std::size_t k = 0; k < test.points.size(); ++k) {
+    if (!model.sees(test.points[k])) continue;
     for (std::size_t i = 0; i < test.points[k].samples.size(); ++i) {
       const TracerSample& sample = test.points[k].samples[i];
       const double background =
@@ -264,7 +265,7 @@ core::Result<ModelFit> fit_model(const TracerTest& test, const TracerModel& mode
                                  const ModelFitOptions& options) {
   std::vector<DeviationLaw> laws;
   for (const SamplingPoint& point : test.points) laws.emplace_back(point);
-  SampleResiduals residuals(model, weighed_samples(test, laws), test.recovery_fitted);
+  SampleResiduals residuals(model, weighed_samples(test, model, laws), test.recovery_fitted);
   std::vector<core::FitParameter> parameters = fit_parameters(test, model);
   const std::size_t needed = parameters.size() + 2;
   if (residuals.n_observations() < needed) {
@@ -292,6 +293,8 @@ core::Result<ModelFit> fit_model(const TracerTest& test, const TracerModel& mode
   result.starts_agreeing = fit.starts_agreeing;
   result.aicc = criterion_of(residuals, fit);
   fill_samples(test, residuals, fit, result);
+  result.all_points = std::ranges::all_of(
+      test.points, [&](const SamplingPoint& point) { return model.sees(point); });
   if (options.intervals) {
     for (std::size_t j = 0; j < parameters.size(); ++j) {
       const core::ProfileInterval interval =

@@ -56,6 +56,9 @@ struct ModelFit {
   double residual_deviation = 0.0;  ///< [1] scatter about the fit in units of the stated error
   long degrees_of_freedom = 0;
   std::vector<FittedSample> samples;
+  /// False when the model has no place for some sampling points: fitted to the outlet alone, its
+  /// criterion does not compare with those of models fitted to all samples.
+  bool all_points = true;
   ResidualTests tests;
   std::size_t starts_tried = 0;
   std::size_t starts_agreeing = 0;

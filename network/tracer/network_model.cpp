@@ -57,6 +57,7 @@ class NetworkModel final : public TracerModel {
   [[nodiscard]] std::span<const RtdParameter> parameters() const override { return parameters_; }
   [[nodiscard]] const RtdModel& residence() const override { return *residence_; }
 
+  [[nodiscard]] bool sees(const SamplingPoint& /*point*/) const override { return true; }
   [[nodiscard]] bool predict(std::span<const double> p, std::span<const SamplePosition> positions,
                              std::span<double> values, std::span<double> gradient) const override {
     const auto system = network_->system(p);

@@ -9,6 +9,7 @@
 #include <utility>
 #include <variant>
 
+#include "core/require.hpp"
 #include "core/side_by_side.hpp"
 #include "network/tracer/model_conversion.hpp"
 
@@ -26,8 +27,13 @@ constexpr std::array kAgesOverRetention = {0.05, 0.1, 0.25, 0.5};
 std::vector<PointResult> moments_of(const TracerTest& test, IntegrationRule rule) {
   std::vector<PointResult> results;
   for (const SamplingPoint& point : test.points) {
-    auto moments = tracer_moments(test, point, rule);
     PointResult result{.at = point.at, .moments = std::nullopt, .reason = {}};
+    if (point.at != "outlet") {
+      result.reason = "recovery and residence times are taken at the outlet";
+      results.push_back(std::move(result));
+      continue;
+    }
+    auto moments = tracer_moments(test, point, rule);
     if (moments) {
       result.moments = std::move(moments.value());
     } else {
@@ -40,7 +46,7 @@ std::vector<PointResult> moments_of(const TracerTest& test, IntegrationRule rule
 
 void tabulate_data(double tau, TracerAnalysis& analysis) {
   const double none = std::numeric_limits<double>::quiet_NaN();
-  const auto& first = analysis.points.front().moments;
+  const auto& first = analysis.points[analysis.outlet].moments;
   for (const double k_tau : kRatesTimesRetention) {
     const double k = k_tau / tau;
     ConversionRow row{.rate = k,
@@ -126,7 +132,8 @@ void say_what_is_open(const TracerTest& test, TracerAnalysis& analysis) {
   std::string rivals;
   for (std::size_t i = 1; i < analysis.models.size(); ++i) {
     const ModelFit& fit = analysis.models[i].fit;
-    if (fit.aicc - best.aicc < 2.0) rivals += (rivals.empty() ? "" : ", ") + fit.name;
+    if (fit.all_points == best.all_points && fit.aicc - best.aicc < 2.0)
+      rivals += (rivals.empty() ? "" : ", ") + fit.name;
   }
   if (!rivals.empty()) {
     words.push_back(fmt::format(
@@ -137,6 +144,11 @@ void say_what_is_open(const TracerTest& test, TracerAnalysis& analysis) {
   }
   for (const FittedParameter& p : best.parameters) {
     if (!p.identified) words.push_back(fmt::format("{} of {}: {}.", p.name, best.name, p.verdict));
+  }
+  if (best.all_points && !analysis.models.back().fit.all_points) {
+    words.emplace_back(
+        "How our own models compare with your networks: they are fitted to the outlet alone, so "
+        "their criteria count other samples.");
   }
   const auto* pulse = std::get_if<PulseDose>(&test.dose);
   if (pulse != nullptr && !(pulse->duration > 0.0)) {
@@ -164,6 +176,9 @@ TracerAnalysis analyse_tracer_test(const TracerTest& test,
   const double tau = nominal_days(test);
   TracerAnalysis analysis;
   analysis.points = moments_of(test, options.rule);
+  const auto outlet = std::ranges::find(analysis.points, "outlet", &PointResult::at);
+  SZ_REQUIRE(outlet != analysis.points.end(), "no point at the outlet");
+  analysis.outlet = static_cast<std::size_t>(outlet - analysis.points.begin());
   tabulate_data(tau, analysis);
   std::vector<std::shared_ptr<const TracerModel>> models;
   for (const std::string& name : test.models) models.emplace_back(make_candidate(name, test));

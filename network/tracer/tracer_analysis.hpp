@@ -65,9 +65,11 @@ struct PointResult {
   std::string reason;
 };
 
-/// Everything a tracer test says. Models best first (corrected Akaike criterion).
+/// Everything a tracer test says. Models best first (corrected Akaike
+/// criterion), those fitted to all sampling points before those fitted to the outlet alone.
 struct TracerAnalysis {
   std::vector<PointResult> points;  ///< one per sampling point
+  std::size_t outlet = 0;           ///< the first point at the outlet
   std::vector<ConversionRow> conversion;
   std::vector<YoungRow> young;
   std::vector<RankedModel> models;

@@ -33,6 +33,9 @@ class TracerModel {
   [[nodiscard]] virtual std::string source() const = 0;
   [[nodiscard]] virtual std::span<const RtdParameter> parameters() const = 0;
 
+  /// False for sampling points that the model does not have: their samples are no part of its fit.
+  [[nodiscard]] virtual bool sees(const SamplingPoint& point) const = 0;
+
   /// Net concentrations [g/m3] when all of the dose is recovered.
   /// @param gradient row after row, positions * parameters, or empty
   /// @return false when there is no such network (a flow would be negative)
@@ -45,8 +48,8 @@ class TracerModel {
   [[nodiscard]] virtual const RtdModel& residence() const = 0;
 };
 
-/// A candidate by name, for the test's dose and nominal volume and flow. It sees the outlet only:
-/// every sampling point counts as the outlet. nullptr for an unknown name.
+/// A candidate by name, for the test's dose and nominal volume and flow. It sees points at the
+/// "outlet" only. nullptr for an unknown name.
 [[nodiscard]] std::unique_ptr<const TracerModel> make_candidate(std::string_view name,
                                                                 const TracerTest& test);
 
