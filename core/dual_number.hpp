@@ -49,9 +49,10 @@ struct Dual {
     return result;
   }
   friend Dual operator/(const Dual& a, const Dual& b) {
-    const S quotient = a.value / b.value;
+    const S inverse = S(1.0) / b.value;  // one division: complex ones are dear
+    const S quotient = a.value * inverse;
     Dual result = constant(quotient);
-    for (std::size_t j = 0; j < N; ++j) result.d[j] = (a.d[j] - quotient * b.d[j]) / b.value;
+    for (std::size_t j = 0; j < N; ++j) result.d[j] = (a.d[j] - quotient * b.d[j]) * inverse;
     return result;
   }
   friend Dual operator-(const Dual& a) { return a.mapped(-a.value, S(-1.0)); }

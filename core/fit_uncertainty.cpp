@@ -168,7 +168,7 @@ std::optional<double> profile_end(Profile& profile, double centre, double step, 
       };
       std::uintmax_t most = 60;
       const auto close = [](double a, double b) {
-        return std::abs(a - b) <= 1e-7 * (std::abs(a) + std::abs(b));
+        return std::abs(a - b) <= 1e-5 * (std::abs(a) + std::abs(b));
       };
       // The ends' values are kept as they were found: a refit on another way there may differ.
       const double outside_excess = std::abs(*root) - limit;

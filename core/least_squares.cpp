@@ -87,16 +87,19 @@ std::unique_ptr<ceres::LossFunction> make_loss(const LeastSquaresOptions& option
 // plateau where a parameter has no effect any more, and look converged there.
 constexpr std::array kFirstRadii = {1e4, 1e-4};
 
+// How closely each of several starts is followed before the best is polished.
+constexpr double kLooseTolerance = 1e-8;
+constexpr int kLooseIterations = 40;
+
 ceres::Solver::Options solver_options(const LeastSquaresOptions& options, double first_radius) {
   ceres::Solver::Options solver;
   solver.linear_solver_type = ceres::DENSE_QR;
   solver.logging_type = ceres::SILENT;
   solver.initial_trust_region_radius = first_radius;
   solver.max_num_iterations = options.most_iterations;
-  // Near rounding: what the NIST reference sets need to reach their certified digits.
-  solver.function_tolerance = 1e-16;
+  solver.function_tolerance = options.tolerance;
   solver.gradient_tolerance = 1e-16;
-  solver.parameter_tolerance = 1e-13;
+  solver.parameter_tolerance = std::max(1e-13, 1e-3 * options.tolerance);
   solver.max_num_consecutive_invalid_steps = 50;
   return solver;
 }
@@ -194,18 +197,28 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
   for (const FitParameter& parameter : parameters) starts[0].push_back(parameter.start);
   starts.insert(starts.end(), options.more_starts.begin(), options.more_starts.end());
 
+  LeastSquaresOptions each = options;
+  const bool several = starts.size() > 1;
+  if (several) {
+    each.tolerance = std::max(each.tolerance, kLooseTolerance);
+    each.most_iterations = std::min(each.most_iterations, kLooseIterations);
+  }
   std::vector<OneStart> ends;
-  const OneStart* best = nullptr;
   for (const auto& start : starts) {
     for (const double radius : kFirstRadii) {
       if (radius < 1.0 && !options.timid_steps_too) continue;
-      ends.push_back(solve_from(function, parameters, start, radius, options));
+      ends.push_back(solve_from(function, parameters, start, radius, each));
     }
   }
+  std::optional<OneStart> best;
   for (const OneStart& end : ends) {
-    if (end.converged && (best == nullptr || end.cost < best->cost)) best = &end;
+    if ((end.converged || several) && (!best || end.cost < best->cost)) best = end;
   }
-  if (best == nullptr) {
+  if (best && several) {
+    OneStart polished = solve_from(function, parameters, best->parameters, kFirstRadii[0], options);
+    if (polished.cost <= best->cost) best = std::move(polished);
+  }
+  if (!best || !best->converged) {
     return Failure{.reason = fmt::format("the fit did not converge from any of {} starting points "
                                          "({})",
                                          starts.size(), ends.front().ended),
@@ -217,8 +230,8 @@ Result<LeastSquaresFit> fit_least_squares(const ResidualFunction& function,
   fit.starts_tried = ends.size();
   fit.ended = best->ended;
   for (const OneStart& end : ends) {
-    const double tolerance = 1e-6 * std::abs(best->cost) + 1e-24;
-    if (!end.converged || end.cost > best->cost + tolerance) continue;
+    const double tolerance = 1e-5 * std::abs(best->cost) + 1e-24;
+    if (!(end.cost <= best->cost + tolerance)) continue;
     ++fit.starts_agreeing;
     for (std::size_t j = 0; j < end.parameters.size(); ++j) {
       const double size = std::abs(end.parameters[j]) + std::abs(best->parameters[j]);

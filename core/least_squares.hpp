@@ -44,13 +44,17 @@ struct LeastSquaresOptions {
   Loss loss = Loss::squares;
   double loss_scale = 2.0;  ///< in units of the weighted residual (its standard deviation)
   int most_iterations = 500;
+  /// Relative change of the cost below which a fit is finished. The default is near rounding: what
+  /// the NIST reference sets need to reach their certified digits.
+  double tolerance = 1e-16;
   /// A solution at which some parameter has no effect (a plateau) is a Failure, unless the caller
   /// asks to see it: then LeastSquaresFit::without_effect tells which.
   bool accept_plateau = false;
   /// Tries each start with a bold and a timid first step; false: only the bold one (refits that
   /// start next to the solution).
   bool timid_steps_too = true;
-  /// Further starting points besides the parameters' own; each as long as the parameters.
+  /// Further starting points besides the parameters' own; each as long as the parameters. All are
+  /// followed loosely (1e-8), the best of them to the end.
   std::vector<std::vector<double>> more_starts;
 };
 
@@ -65,7 +69,7 @@ struct LeastSquaresFit {
   int iterations = 0;
   std::size_t starts_tried = 0;     ///< a start counts twice when bold and timid steps are tried
   std::size_t starts_agreeing = 0;  ///< that reached this minimum
-  /// Some other start ended elsewhere with the same sum of squares (to 1e-6): not the only
+  /// Some other start ended elsewhere with the same sum of squares (to 1e-5): not the only
   /// solution.
   bool ambiguous = false;
   std::string ended;  ///< why it stopped, with the numbers

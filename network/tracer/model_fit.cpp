@@ -16,8 +16,11 @@ namespace stillzone::network {
 namespace {
 
 constexpr double kRobustScale = 2.0;
+/// Relative change of the sum of squares at which a fit is finished: standard errors then hold to
+/// better than 1e-5.
+constexpr double kTolerance = 1e-13;
 constexpr std::size_t kMoreStarts = 4;
-constexpr int kMostReweightings = 50;
+constexpr int kMostReweightings = 20;
 
 /// A deviation in proportion to the value needs a smallest value to stay above zero: the detection
 /// limit, and a hundredth of the highest sample (common practice, no source).
@@ -138,6 +141,7 @@ core::Result<core::LeastSquaresFit> fit_reweighted(const TracerTest& test,
                                                    SampleResiduals& residuals) {
   core::LeastSquaresOptions options;
   options.accept_plateau = true;
+  options.tolerance = kTolerance;
   options.more_starts = more_starts(parameters);
   if (test.robust) options.loss = core::LeastSquaresOptions::Loss::soft_l1;
   options.loss_scale = kRobustScale;
@@ -150,7 +154,7 @@ core::Result<core::LeastSquaresFit> fit_reweighted(const TracerTest& test,
   options.loss = core::LeastSquaresOptions::Loss::squares;
   for (int k = 0; k < kMostReweightings; ++k) {
     const double change = reweigh(fit.value(), laws, test, residuals);
-    if (k > 0 && change < 1e-6) break;
+    if (k > 0 && change < 1e-4) break;
     for (std::size_t j = 0; j < parameters.size(); ++j) {
       parameters[j].start = fit.value().parameters[j];
     }
@@ -298,7 +302,8 @@ core::Result<ModelFit> fit_model(const TracerTest& test, const TracerModel& mode
   if (options.intervals) {
     for (std::size_t j = 0; j < parameters.size(); ++j) {
       const core::ProfileInterval interval =
-          core::profile_interval(residuals, parameters, fit, j, options.confidence, {});
+          core::profile_interval(residuals, parameters, fit, j, options.confidence,
+                                 {.most_iterations = 100, .tolerance = 1e-9, .more_starts = {}});
       result.parameters[j].low = interval.low;
       result.parameters[j].high = interval.high;
       if (interval.better_minimum_found) {

@@ -154,6 +154,7 @@ struct ByInversion {
     if (theta <= 0.0) return {0.0};
     const auto parameters = on_plane(p);
     return invert_laplace<N>(
+        Candidate::rule(p),
         [&](const core::Dual<std::complex<double>, N>& s) {
           auto image = Candidate::transform(parameters, s);
           for (int k = 0; k < power; ++k) image = image / s;
@@ -171,6 +172,12 @@ struct ByInversion {
 struct SeriesStagnant : ByInversion<SeriesStagnant, 3> {
   static constexpr std::size_t n = 3;  // tanks, mixed_fraction, exchange_flow
   using P = Parameters<n>;
+  /// Many tanks make a front, which takes more nodes.
+  static const TalbotRule& rule(const P& p) {
+    static const TalbotRule kFew(32);
+    static const TalbotRule kMany(56);
+    return p[0].value < 5.0 ? kFew : kMany;
+  }
   template <class T>
   static T transform(const std::array<T, n>& p, const T& s) {
     const T still = T(1.0) - p[1];
@@ -245,6 +252,12 @@ struct ParallelPaths {
 struct Dispersion : ByInversion<Dispersion, 2> {
   static constexpr std::size_t n = 2;  // volume, peclet
   using P = Parameters<n>;
+  /// A high Peclet number makes a front, which takes more nodes.
+  static const TalbotRule& rule(const P& p) {
+    static const TalbotRule kFew(32);
+    static const TalbotRule kMany(56);
+    return p[1].value < 10.0 ? kFew : kMany;
+  }
   template <class T>
   static T transform(const std::array<T, n>& p, const T& s) {
     const T one(1.0);

@@ -55,6 +55,9 @@ class BrokenFiles(InFolder):
     def test_models(self):
         self.check_folder("models", "model")
 
+    def test_tests(self):
+        self.assertGreaterEqual(self.check_folder("tests", "tracer"), 30)
+
     def test_there_are_at_least_40(self):
         self.assertGreaterEqual(len(list(BROKEN.glob("*/*.json"))), 40)
 
