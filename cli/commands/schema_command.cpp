@@ -26,7 +26,7 @@ Command schema_command() {
   return {.name = "schema",
           .summary = "prints the JSON Schema of an input file, for editors",
           .input_name = "KIND",
-          .input_meaning = "case (default) or model",
+          .input_meaning = "case (default), test or model",
           .input_needed = false,
           .example = "stillzone schema case > case.schema.json",
           .writes_output = false,

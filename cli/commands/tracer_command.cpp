@@ -10,6 +10,7 @@
 #include <utility>
 
 #include "cli/output_path.hpp"
+#include "cli/report/tracer_report.hpp"
 #include "cli/run_log.hpp"
 #include "cli/tracer_summary.hpp"
 #include "cli/tracer_tables.hpp"
@@ -27,7 +28,15 @@ struct LoadedTest {
   network::TracerTest test;
   std::vector<std::shared_ptr<const network::TracerModel>> networks;
   std::vector<std::string> warnings;
+  std::string text;  ///< the file as it stands, for provenance
 };
+
+std::string text_of(const std::string& path) {
+  std::ifstream file(path, std::ios::binary);
+  std::ostringstream text;
+  text << file.rdbuf();
+  return std::move(text).str();
+}
 
 std::optional<LoadedTest> load_test(const CommandLine& line, Console& console) {
   core::FaultList faults;
@@ -58,7 +67,8 @@ std::optional<LoadedTest> load_test(const CommandLine& line, Console& console) {
   return LoadedTest{.document = std::move(*document),
                     .test = std::move(*test),
                     .networks = std::move(networks),
-                    .warnings = std::move(warnings)};
+                    .warnings = std::move(warnings),
+                    .text = text_of(line.input)};
 }
 
 /// Reads --feed FILE: {"NAME": {"flow": .., ..}}, or a case with one feed.
@@ -173,7 +183,18 @@ int analyse(const CommandLine& line, Console& console) {
       tracer_summary(loaded->test, analysis, loaded->warnings).dump(2) + "\n";
   auto done = folder.value().write("summary.json", summary);
   if (done) done = folder.value().write("fits.csv", fits_csv(loaded->test, analysis));
-  std::string files = "summary.json, fits.csv";
+  if (done) {
+    done = folder.value().write("report.html",
+                                tracer_report_page({.test = loaded->test,
+                                                    .analysis = analysis,
+                                                    .provenance = {.version = STILLZONE_VERSION,
+                                                                   .input_name = line.input,
+                                                                   .input_text = loaded->text,
+                                                                   .command_line = line.whole,
+                                                                   .date = time_of_writing()},
+                                                    .remarks = loaded->warnings}));
+  }
+  std::string files = "summary.json, fits.csv, report.html";
   if (line.emit && done) {
     const network::RankedModel* ranked = chosen_model(*line.emit, analysis, console);
     if (ranked == nullptr) return kWrongCommandLine;

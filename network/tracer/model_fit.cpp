@@ -134,8 +134,27 @@ double reweigh(const core::LeastSquaresFit& fit, std::span<const DeviationLaw> l
   return change;
 }
 
+/// The same solution under the names that the model's parameters mean, fitted from there.
+core::Result<core::LeastSquaresFit> named_as_meant(const TracerModel& model,
+                                                   core::LeastSquaresFit fit,
+                                                   std::span<core::FitParameter> parameters,
+                                                   const SampleResiduals& residuals) {
+  std::vector<double> settled = fit.parameters;
+  model.residence().settle_names(std::span(settled).first(model.parameters().size()));
+  if (settled == fit.parameters) return fit;
+  for (std::size_t j = 0; j < parameters.size(); ++j) parameters[j].start = settled[j];
+  core::LeastSquaresOptions options;
+  options.accept_plateau = true;
+  options.tolerance = kTolerance;
+  auto again = fit_least_squares(residuals, parameters, options);
+  if (!again) return again;
+  again.value().starts_tried = fit.starts_tried;
+  again.value().starts_agreeing = fit.starts_agreeing;
+  return again;
+}
+
 /// Fits, then fits again from there until the deviations agree with the fitted values.
-core::Result<core::LeastSquaresFit> fit_reweighted(const TracerTest& test,
+core::Result<core::LeastSquaresFit> fit_reweighted(const TracerTest& test, const TracerModel& model,
                                                    std::span<const DeviationLaw> laws,
                                                    std::span<core::FitParameter> parameters,
                                                    SampleResiduals& residuals) {
@@ -146,6 +165,7 @@ core::Result<core::LeastSquaresFit> fit_reweighted(const TracerTest& test,
   if (test.robust) options.loss = core::LeastSquaresOptions::Loss::soft_l1;
   options.loss_scale = kRobustScale;
   auto fit = fit_least_squares(residuals, parameters, options);
+  if (fit) fit = named_as_meant(model, std::move(fit.value()), parameters, residuals);
   const bool relative = std::any_of(test.points.begin(), test.points.end(),
                                     [](const auto& point) { return point.error_relative > 0.0; });
   if (!fit || (!relative && !test.robust)) return fit;
@@ -278,7 +298,7 @@ core::Result<ModelFit> fit_model(const TracerTest& test, const TracerModel& mode
                               residuals.n_observations(), parameters.size(), needed),
         .try_this = "Leave this model out, or take \"recovery\": \"as dosed\"."};
   }
-  auto fitted = fit_reweighted(test, laws, parameters, residuals);
+  auto fitted = fit_reweighted(test, model, laws, parameters, residuals);
   if (!fitted) return fitted.failure();
   const core::LeastSquaresFit& fit = fitted.value();
   const core::FitUncertainty uncertainty = core::fit_uncertainty(fit, parameters.size());

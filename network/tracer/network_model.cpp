@@ -261,7 +261,8 @@ void compare_with_test(const Case& the_case, const TracerTest& test, const Bindi
 }  // namespace
 
 std::optional<UserNetwork> bind_user_network(const core::JsonDocument& document,
-                                             const TracerTest& test, const core::UnitReader& units,
+                                             const std::string& name, const TracerTest& test,
+                                             const core::UnitReader& units,
                                              core::FaultList& faults) {
   const std::size_t n_before = faults.all().size();
   const auto the_case = read_case(document, units, faults);
@@ -269,7 +270,6 @@ std::optional<UserNetwork> bind_user_network(const core::JsonDocument& document,
   const auto balance = FlowBalance::solve(*the_case, document, faults);
   if (!balance) return std::nullopt;
   UserNetwork user;
-  user.path = document.name();
   Binding binding(*the_case, document, test, faults);
   const auto injection = binding.injection();
   auto places = binding.places();
@@ -283,22 +283,18 @@ std::optional<UserNetwork> bind_user_network(const core::JsonDocument& document,
                    "Leave out \"flow\" on the flow that should take up the difference.");
   }
   if (faults.all().size() > n_before) return std::nullopt;
-  std::vector<double> start;
-  for (const RtdParameter& p : free.parameters) start.push_back(p.start);
-  user.model = std::make_unique<NetworkModel>(document.name(), std::move(network), *injection,
+  user.model = std::make_unique<NetworkModel>(name, std::move(network), *injection,
                                               std::move(*places), test, free.parameters);
   return user;
 }
 
 std::optional<UserNetwork> load_user_network(const std::filesystem::path& path,
-                                             const std::string& shown_path, const TracerTest& test,
+                                             const std::string& name, const TracerTest& test,
                                              const core::UnitReader& units,
                                              core::FaultList& faults) {
   const auto document = core::JsonDocument::read(path, faults);
   if (!document) return std::nullopt;
-  auto user = bind_user_network(*document, test, units, faults);
-  if (user) user->path = shown_path;
-  return user;
+  return bind_user_network(*document, name, test, units, faults);
 }
 
 }  // namespace stillzone::network

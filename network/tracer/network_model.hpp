@@ -15,7 +15,6 @@ namespace stillzone::network {
 /// case hold at the test's mean flow; when the flow varies all of them vary with it (time is
 /// counted in turnovers).
 struct UserNetwork {
-  std::string path;
   std::unique_ptr<const TracerModel> model;
   std::vector<std::string> remarks;  ///< what does not act on a tracer, what does not agree
 };
@@ -25,13 +24,14 @@ struct UserNetwork {
 /// the case does not have; a free quantity that continuity or shares do not leave free.
 /// @return empty when there was a fault
 [[nodiscard]] std::optional<UserNetwork> load_user_network(const std::filesystem::path& path,
-                                                           const std::string& shown_path,
+                                                           const std::string& name,
                                                            const TracerTest& test,
                                                            const core::UnitReader& units,
                                                            core::FaultList& faults);
 
-/// The same from a case already read; `network_residence` alone is also of use without a test.
+/// The same from a document already read. @param name of the model, as the test calls it
 [[nodiscard]] std::optional<UserNetwork> bind_user_network(const core::JsonDocument& document,
+                                                           const std::string& name,
                                                            const TracerTest& test,
                                                            const core::UnitReader& units,
                                                            core::FaultList& faults);

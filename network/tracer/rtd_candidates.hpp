@@ -4,6 +4,7 @@
 #include <cmath>
 #include <complex>
 #include <cstddef>
+#include <span>
 #include <utility>
 #include <vector>
 
@@ -220,6 +221,12 @@ struct PlugTank {
 struct ParallelPaths {
   static constexpr std::size_t n = 3;  // volume, fast_flow_fraction, fast_volume_fraction
   using P = Parameters<n>;
+  /// The fast path is the one with less volume for its flow.
+  static void settle_names(std::span<double> p) {
+    if (p[2] <= p[1]) return;
+    p[1] = 1.0 - p[1];
+    p[2] = 1.0 - p[2];
+  }
   static Real<n> fast(const P& p) { return p[0] * p[2] / p[1]; }
   static Real<n> slow(const P& p) { return p[0] * (Real<n>(1.0) - p[2]) / (Real<n>(1.0) - p[1]); }
   template <class Response>

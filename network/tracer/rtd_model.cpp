@@ -41,6 +41,9 @@ class CandidateModel : public RtdModel {
   [[nodiscard]] std::string_view source() const override { return description_.source; }
   [[nodiscard]] std::span<const RtdParameter> parameters() const override { return parameters_; }
 
+  void settle_names(std::span<double> p) const override {
+    if constexpr (requires { Candidate::settle_names(p); }) Candidate::settle_names(p);
+  }
   double step_response(std::span<const double> p, double theta,
                        std::span<double> gradient) const override {
     if (theta < 0.0) return unpack(core::Dual<double, n>(0.0), gradient);

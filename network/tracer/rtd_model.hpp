@@ -43,6 +43,10 @@ class RtdModel {
   [[nodiscard]] virtual std::string_view source() const = 0;
   [[nodiscard]] virtual std::span<const RtdParameter> parameters() const = 0;
 
+  /// Of several sets of parameters that are one and the same model (two paths whose names are
+  /// swapped) puts the one that the names mean in place of p.
+  virtual void settle_names(std::span<double> /*p*/) const {}
+
   /// F(theta): share of a step that has reached the outlet, right-continuous (a bypass counts from
   /// theta = 0 on); 0 for theta < 0. gradient: dF/dp, size parameters(), may be empty.
   virtual double step_response(std::span<const double> p, double theta,

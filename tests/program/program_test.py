@@ -286,6 +286,72 @@ class Summary(InFolder):
             self.assertEqual(names[0].rstrip("\0"), "core")
 
 
+class Tracer(InFolder):
+    """A tracer test from its CSV to a case that runs."""
+
+    TEST = CASES / "lithium_test.json"
+
+    def test_from_test_to_run(self):
+        done = run("tracer", self.TEST, "--emit", "stagnant_exchange", "--out", "found",
+                   cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertEqual(done.stderr, "")
+        found = self.folder / "found"
+        self.assertEqual(sorted(p.name for p in found.iterdir() if p.suffix in (".json", ".csv", ".html")),
+                         ["fits.csv", "report.html", "stagnant_exchange.case.json", "summary.json"])
+        summary = json.loads((found / "summary.json").read_text())
+        best = summary["models"][0]
+        self.assertEqual(best["name"], "stagnant_exchange")
+        # What the invented data were made with: 74 % mixed, 0.28 of the flow exchanged, 92 % seen.
+        for name, truth in (("mixed_fraction", 0.74), ("exchange_flow", 0.28 * 170.85),
+                            ("recovered_fraction", 0.92)):
+            parameter = best["parameters"][name]
+            self.assertLess(parameter["low"], truth, name)
+            self.assertGreater(parameter["high"], truth, name)
+            self.assertTrue(parameter["identified"], name)
+        self.assertEqual(len(summary["models"]), 8)
+        self.assertAlmostEqual(sum(m["weight"] for m in summary["models"]), 1.0)
+        case = found / "stagnant_exchange.case.json"
+        self.assertEqual(run("check", case, cwd=self.folder).returncode, 0)
+        ran = run("run", case, "--json", "--quiet", cwd=self.folder)
+        self.assertEqual(ran.returncode, 0, ran.stderr)
+        for name, error in json.loads(ran.stdout)["balances"].items():
+            self.assertLess(abs(error), 1e-9, name)
+
+    def test_own_network_and_feed_of_a_case(self):
+        done = run("tracer", CASES / "lithium_own_network.json", "--emit", "lithium_network.json",
+                   "--json", "--out", "own", cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        names = [m["name"] for m in json.loads(done.stdout)["models"]]
+        self.assertIn("lithium_network.json", names)
+        self.assertEqual(run("check", self.folder / "own" / "lithium_network.case.json",
+                             cwd=self.folder).returncode, 0)
+        done = run("tracer", self.TEST, "--emit", "1", "--feed", CASES / "ideal_tank.json",
+                   "--out", "fed", cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        text = next((self.folder / "fed").glob("*.case.json")).read_text()
+        self.assertNotIn("invented", text)
+
+    def test_threads_do_not_change_a_digit(self):
+        texts = [run("tracer", self.TEST, "--json", "--out", f"t{n}", "--threads", n,
+                     cwd=self.folder).stdout for n in (1, 2)]
+        self.assertEqual(texts[0], texts[1])
+
+    def test_mistakes_of_the_command_line(self):
+        for arguments, code, message in (
+                (["--emit", "9"], 2, 'no such model was fitted; a number from 1 to 8'),
+                (["--emit", "one_tnk"], 2, 'Did you mean "one_tank"?'),
+                (["--feed", "x.json"], 2, "--feed belongs to --emit"),
+                (["--emit", "1", "--feed", "x.json"], 1, "x.json"),
+                (["--rule", "simpsn"], 2, 'Did you mean "simpson"?')):
+            with self.subTest(" ".join(arguments)):
+                done = run("tracer", self.TEST, *arguments, cwd=self.folder)
+                self.assertEqual(done.returncode, code, done.stderr)
+                self.assertIn(message, done.stderr)
+                self.assertEqual(done.stdout, "")
+        self.assertEqual(self.left_behind(), [])
+
+
 class ShippedCases(InFolder):
     """Every shipped case is valid, and its balances close."""
 
@@ -322,6 +388,15 @@ class ShippedCases(InFolder):
         for path in self.cases():
             with self.subTest(path.name):
                 self.assertEqual(list(validator.iter_errors(without_comments(path.read_text()))), [])
+        test_schema = json.loads(run("schema", "test").stdout)
+        jsonschema.Draft7Validator.check_schema(test_schema)
+        test_validator = jsonschema.Draft7Validator(test_schema)
+        tests = [p for p in sorted(CASES.glob("*.json")) if '"test/1"' in p.read_text()]
+        self.assertGreater(len(tests), 0)
+        for path in tests:
+            with self.subTest(path.name):
+                self.assertEqual(
+                    list(test_validator.iter_errors(without_comments(path.read_text()))), [])
         model_schema = json.loads(run("schema", "model").stdout)
         jsonschema.Draft7Validator.check_schema(model_schema)
         models = jsonschema.Draft7Validator(model_schema)

@@ -165,7 +165,7 @@ TEST(PublishedGradostat, EigenvaluesOfEqualVesselsInARow) {  // NET-8, 1e-10; D 
 UserNetwork bound(const json& c, const TracerTest& test) {
   core::FaultList faults;
   const auto document = core::JsonDocument::parse(c.dump(), "network.json", ".", faults);
-  auto user = bind_user_network(*document, test, core::UnitReader(), faults);
+  auto user = bind_user_network(*document, "network.json", test, core::UnitReader(), faults);
   EXPECT_TRUE(user) << faults.text();
   return std::move(*user);
 }

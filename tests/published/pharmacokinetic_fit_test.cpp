@@ -60,7 +60,7 @@ json test_file(const std::string& volume, const std::string& flow, const std::st
 ModelFit fitted(const TracerTest& test, const json& network) {
   core::FaultList faults;
   const auto document = core::JsonDocument::parse(network.dump(), "network.json", ".", faults);
-  const auto user = bind_user_network(*document, test, core::UnitReader(), faults);
+  const auto user = bind_user_network(*document, "network.json", test, core::UnitReader(), faults);
   EXPECT_TRUE(user) << faults.text();
   auto fit = fit_model(test, *user->model, {});
   EXPECT_TRUE(fit.ok());

@@ -47,9 +47,13 @@ std::vector<std::string> files_in(const std::string& folder) {
 }
 
 TEST(CaseReader, EveryShippedCaseIsRightAndBalances) {
-  const auto files = files_in("cases");
-  EXPECT_GE(files.size(), 6U);
-  for (const std::string& file : files) EXPECT_EQ(read(file).faults, "") << file;
+  std::size_t n_cases = 0;
+  for (const std::string& file : files_in("cases")) {
+    if (file_text(file).find("\"case/1\"") == std::string::npos) continue;  // a test or a study
+    EXPECT_EQ(read(file).faults, "") << file;
+    ++n_cases;
+  }
+  EXPECT_GE(n_cases, 6U);
 }
 
 TEST(CaseReader, EveryBrokenCaseGetsItsExactMessages) {
