@@ -152,7 +152,7 @@ std::unique_ptr<TracerSampleCase> own_network_sample() {
   const std::string blank_table = "t,li\n1,5\n2,5\n3,5\n4,5\n5,5\n";
   const auto blank = read(text, blank_table, "", blank_table);
   if (!document || !blank) return nullptr;
-  auto user = network::bind_user_network(*document, blank->test, units, faults);
+  auto user = network::bind_user_network(*document, "own_network.json", blank->test, units, faults);
   if (!user) {
     std::cerr << faults.text();
     return nullptr;
