@@ -329,7 +329,8 @@ void Tracer::look_beyond() {
   const double load = kJustBeyond * *curve_.critical_load;
   auto settled = settle(last_stable_, load);
   if (!settled) {
-    curve_.state_beyond = "not found: " + settled.failure().text();
+    curve_.state_beyond = "not settled (see the notes)";
+    curve_.notes.push_back("just beyond the critical load: " + settled.failure().text());
     return;
   }
   std::vector<double> y = std::move(settled).value();
