@@ -55,7 +55,7 @@ std::vector<std::string> names_of(const std::vector<Command>& commands) {
 
 /// Commands of the contract that later versions bring.
 bool comes_later(const std::string& name) {
-  static const std::vector<std::string> later = {"plan", "retrofit", "calibrate"};
+  static const std::vector<std::string> later = {"retrofit", "calibrate"};
   return std::find(later.begin(), later.end(), name) != later.end();
 }
 

@@ -3,6 +3,7 @@
 #include "cli/command_line.hpp"
 #include "cli/commands/check_command.hpp"
 #include "cli/commands/model_command.hpp"
+#include "cli/commands/plan_command.hpp"
 #include "cli/commands/run_command.hpp"
 #include "cli/commands/schema_command.hpp"
 #include "cli/commands/tracer_command.hpp"
@@ -13,7 +14,7 @@ namespace {
 
 /// A new command is one more line here and a file in cli/commands/.
 std::vector<Command> all_commands() {
-  return {check_command(),   run_command(),   tracer_command(),
+  return {check_command(),   run_command(),   tracer_command(), plan_command(),
           washout_command(), model_command(), schema_command()};
 }
 

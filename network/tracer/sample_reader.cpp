@@ -19,13 +19,6 @@ using core::Measure;
 using core::ObjectReader;
 using Need = ObjectReader::Need;
 
-/// Standard deviation of a value: an absolute part and one in proportion.
-struct ErrorModel {
-  double absolute = 0.0;  ///< [g/m3]
-  double relative = 0.0;  ///< [1]
-  [[nodiscard]] double at(double value) const { return std::hypot(absolute, relative * value); }
-};
-
 /// One part of "error": "0.10 g/m3" or "3 %".
 void add_error_part(ObjectReader& reader, const core::Json& node, const std::string& pointer,
                     ErrorModel& error) {
@@ -53,26 +46,6 @@ void add_error_part(ObjectReader& reader, const core::Json& node, const std::str
                  "an error has one share and one concentration at most", "Take one of them out.");
   }
   part = is_share ? *value : 1000.0 * *value;
-}
-
-ErrorModel read_error(ObjectReader& reader) {
-  ErrorModel error;
-  const core::Json* node = reader.raw("error");
-  if (node == nullptr || (node->is_array() && node->empty())) {
-    reader.fault(
-        node == nullptr ? "" : "error", node == nullptr ? "no \"error\"" : "an empty list",
-        "the fit weighs every sample by its standard deviation",
-        "Add \"error\": \"3 %\", \"0.1 g/m3\" or both as a list; the laboratory knows it.");
-    return error;
-  }
-  if (!node->is_array()) {
-    add_error_part(reader, *node, reader.pointer_to("error"), error);
-    return error;
-  }
-  for (std::size_t i = 0; i < node->size(); ++i) {
-    add_error_part(reader, (*node)[i], fmt::format("{}/{}", reader.pointer_to("error"), i), error);
-  }
-  return error;
 }
 
 /// "<0.02", "< 0,02" -> 0.02.
@@ -291,6 +264,26 @@ void read_samples(ObjectReader& reader, const core::CsvTable& table, const TimeA
 }
 
 }  // namespace
+
+ErrorModel read_error(ObjectReader& reader) {
+  ErrorModel error;
+  const core::Json* node = reader.raw("error");
+  if (node == nullptr || (node->is_array() && node->empty())) {
+    reader.fault(
+        node == nullptr ? "" : "error", node == nullptr ? "no \"error\"" : "an empty list",
+        "the fit weighs every sample by its standard deviation",
+        "Add \"error\": \"3 %\", \"0.1 g/m3\" or both as a list; the laboratory knows it.");
+    return error;
+  }
+  if (!node->is_array()) {
+    add_error_part(reader, *node, reader.pointer_to("error"), error);
+    return error;
+  }
+  for (std::size_t i = 0; i < node->size(); ++i) {
+    add_error_part(reader, (*node)[i], fmt::format("{}/{}", reader.pointer_to("error"), i), error);
+  }
+  return error;
+}
 
 std::optional<SamplingPoint> read_sampling_point(ObjectReader& reader, const TestClock& clock,
                                                  const TracerTest& test) {

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <cmath>
 #include <optional>
 
 #include "core/json_reader.hpp"
@@ -7,6 +8,15 @@
 #include "network/tracer/tracer_test.hpp"
 
 namespace stillzone::network {
+
+/// Standard deviation of a value: an absolute part and one in proportion.
+struct ErrorModel {
+  double absolute = 0.0;  ///< [g/m3]
+  double relative = 0.0;  ///< [1]
+  [[nodiscard]] double at(double value) const { return std::hypot(absolute, relative * value); }
+};
+/// "error": "0.10 g/m3", "3 %", or both as a list. A fault when it is missing.
+ErrorModel read_error(core::ObjectReader& reader);
 
 /// Reads and cleans one entry of "samples": {"at", "csv", "time": {"column", "unit" | "dates",
 /// "clock"}, "value": {"column", "unit"}, "error", "detection_limit"}.

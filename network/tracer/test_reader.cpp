@@ -282,6 +282,7 @@ std::optional<TracerTest> read_tracer_test(const core::JsonDocument& document,
   test.robust = reader.word("loss", kLoss, Need::optional).value_or("squares") == "robust";
   read_models(reader, test);
   read_points(reader, clock, test);
+  (void)reader.raw("plan");  // for `stillzone plan`
   refuse_free_quantities(reader, free_quantities);
   reader.finish();
   if (faults.all().size() > n_before) return std::nullopt;

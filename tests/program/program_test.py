@@ -58,6 +58,9 @@ class BrokenFiles(InFolder):
     def test_tests(self):
         self.assertGreaterEqual(self.check_folder("tests", "tracer"), 30)
 
+    def test_plans(self):
+        self.assertGreaterEqual(self.check_folder("plans", "plan"), 6)
+
     def test_there_are_at_least_40(self):
         self.assertGreaterEqual(len(list(BROKEN.glob("*/*.json"))), 40)
 
@@ -350,6 +353,37 @@ class Tracer(InFolder):
                 self.assertIn(message, done.stderr)
                 self.assertEqual(done.stdout, "")
         self.assertEqual(self.left_behind(), [])
+
+
+class Plan(InFolder):
+    """A tracer test designed, and its sheet."""
+
+    def test_plan_of_a_lithium_test(self):
+        done = run("plan", CASES / "plan_lithium_test.json", "--json", "--out", "p", cwd=self.folder)
+        self.assertEqual(done.returncode, 0, done.stderr)
+        plan = json.loads(done.stdout)
+        # 100 detection limits of 0.05 g/m3 in 3400 m3.
+        self.assertAlmostEqual(plan["mass_kg"], 17.0)
+        times = plan["sampling_times_d"]
+        self.assertEqual(len(times), 25)
+        self.assertTrue(all(b - a > 0.08 for a, b in zip(times, times[1:])))
+        self.assertLessEqual(times[-1], 60.0 + 1e-9)
+        sheet = (self.folder / "p" / "sampling.csv").read_text().splitlines()
+        self.assertEqual(len(sheet), 26)
+        for curve in plan["detection"]:
+            self.assertLessEqual(curve["power"][0], 0.15, curve["fault"])
+            self.assertIsNotNone(curve["smallest_at_80_percent"], curve["fault"])
+        again = run("plan", CASES / "plan_lithium_test.json", "--json", "--threads", "1", "--out",
+                    "q", cwd=self.folder)
+        self.assertEqual(done.stdout, again.stdout)
+
+    def test_a_dose_at_once_does_not_show_a_bypass(self):
+        done = run("plan", CASES / "plan_lithium_test.json", "--json", "--set", "/dose/over=0 d",
+                   "--out", "p", cwd=self.folder)
+        plan = json.loads(done.stdout)
+        bypass = [c for c in plan["detection"] if c["fault"] == "bypass"][0]
+        self.assertIsNone(bypass["smallest_at_80_percent"])
+        self.assertIn("cannot show a bypass", " ".join(plan["warnings"]))
 
 
 class ShippedCases(InFolder):
