@@ -67,7 +67,10 @@ struct Shortfall {
 std::optional<Shortfall> worst_shortfall(const LoadCurve& network, const LoadCurve& ideal) {
   constexpr double kWorthAWord = 0.005;
   std::optional<Shortfall> worst;
+  double reached = 0.0;
   for (const CurvePoint& point : network.points) {
+    if (point.load < reached) break;  // past the fold: states nobody will see
+    reached = point.load;
     const auto tank = removed_at(ideal, point.load);
     if (point.load < 1.0 || !tank || *tank - point.cod_removed < kWorthAWord) continue;
     if (worst && *tank - point.cod_removed <= worst->ideal - worst->network) continue;
